@@ -1,0 +1,326 @@
+"""From a rule to a compiled module: generate, write to the cache, import.
+
+The text of `template.py` is kept but for the part between its two marks, which is replaced by the
+rule's hooks as plain functions of numbers and by the few lines that connect them to the arrays.
+The file's name is a hash of everything it depends on (its own text, the engine's primitives, the
+versions of numba and Python), so a stale file can never be loaded, and a rule is compiled once.
+Parameters and routes are data: changing them compiles nothing.
+"""
+
+from __future__ import annotations
+
+import ast
+import builtins
+import hashlib
+import importlib.util
+import inspect
+import os
+import platform
+import sys
+import tempfile
+import textwrap
+import threading
+from dataclasses import dataclass
+from pathlib import Path
+from types import ModuleType
+from typing import Any
+
+import numba
+import numpy as np
+from numpy.typing import NDArray
+
+from plastic.engine import layout, steps, template
+from plastic.errors import RuleError
+from plastic.rules._interface import HOOKS, Rule
+
+START = "# ---- the rule "
+END = "# ---- end of the rule "
+ALLOWED = {"math", "min", "max", "abs", "float", "int", "bool", "range", "True", "False"}
+_lock = threading.Lock()
+_loaded: dict[str, ModuleType] = {}
+
+
+@dataclass(frozen=True)
+class Numbers:
+    """The declarations of one rule as arrays, in the order of the generated code."""
+
+    parameters: NDArray[np.float64]
+    starts: NDArray[np.float64]
+    cell_starts: NDArray[np.float64]
+    low: NDArray[np.float64]
+    high: NDArray[np.float64]
+    taus_pre: NDArray[np.float64]
+    taus_post: NDArray[np.float64]
+    window: float
+
+
+@dataclass(frozen=True)
+class Rows:
+    """The names of a rule's variables, in the order of the generated arrays."""
+
+    inputs: tuple[str, ...]
+    cell: tuple[str, ...]
+    pre: tuple[str, ...]
+    post: tuple[str, ...]
+
+    @classmethod
+    def of(cls, rule: type[Rule]) -> Rows:
+        """Return the rows of `rule`: weights first, then states of input scope."""
+        states = [n for n, s in rule.states.items() if s.scope == "input"]
+        return cls(
+            (*rule.weights, *states),
+            tuple(n for n, s in rule.states.items() if s.scope == "cell"),
+            tuple(n for n, tr in rule.traces.items() if tr.source == "pre"),
+            tuple(n for n, tr in rule.traces.items() if tr.source == "post"),
+        )
+
+
+def numbers_of(rule: Rule) -> Numbers:
+    """Return the rule's declared numbers as arrays."""
+    rows, number = Rows.of(type(rule)), rule.number
+    starts = [
+        number((rule.weights[n] if n in rule.weights else rule.states[n]).start) for n in rows.inputs
+    ]
+    return Numbers(
+        np.array(list(rule.values.values()), dtype=float),
+        np.array(starts, dtype=float),
+        np.array([number(rule.states[n].start) for n in rows.cell], dtype=float),
+        np.array([number(w.low) for w in rule.weights.values()], dtype=float),
+        np.array([number(w.high) for w in rule.weights.values()], dtype=float),
+        np.array([number(rule.traces[n].tau) for n in rows.pre], dtype=float),
+        np.array([number(rule.traces[n].tau) for n in rows.post], dtype=float),
+        float(getattr(rule, "window", 0.0)) if rule.reads == "rates" else 0.0,
+    )
+
+
+def module_for(rule: type[Rule]) -> ModuleType:
+    """Return the compiled module of a rule class, generating it when it is not in the cache."""
+    text = text_for(rule)
+    versions = f"{numba.__version__} {np.__version__} {platform.python_version()}"
+    parts = [text, inspect.getsource(steps), inspect.getsource(layout), versions]
+    digest = hashlib.sha256("\0".join(parts).encode()).hexdigest()[:16]
+    name = f"plastic_rule_{rule.__name__.lower()}_{digest}"
+    with _lock:
+        if name not in _loaded:
+            _loaded[name] = _import(_written(name, text), name)
+        return _loaded[name]
+
+
+def cache_folder() -> Path:
+    """Return the folder of generated modules: PLASTIC_CACHE, or the user's cache folder."""
+    given = os.environ.get("PLASTIC_CACHE")
+    base = os.environ.get("XDG_CACHE_HOME") or os.path.join(os.path.expanduser("~"), ".cache")
+    return Path(given) if given else Path(base) / "plastic"
+
+
+def _written(name: str, text: str) -> Path:
+    """Write the module once, atomically; fall back to a temporary folder if the cache is closed."""
+    for folder in (cache_folder(), Path(tempfile.gettempdir()) / f"plastic-{os.getuid()}"):
+        path = folder / f"{name}.py"
+        try:
+            folder.mkdir(parents=True, exist_ok=True)
+            if path.exists() and path.read_text() == text:
+                return path
+            handle, part = tempfile.mkstemp(dir=folder, suffix=".part")
+            with os.fdopen(handle, "w") as file:
+                file.write(text)
+            os.replace(part, path)
+            return path
+        except OSError:
+            continue
+    raise RuleError(f"no folder for compiled rules can be written; set PLASTIC_CACHE ({name})")
+
+
+def _import(path: Path, name: str) -> ModuleType:
+    spec = importlib.util.spec_from_file_location(name, path)
+    if spec is None or spec.loader is None:
+        raise RuleError(f"the generated module {path} cannot be imported")
+    module = importlib.util.module_from_spec(spec)
+    sys.modules[name] = module
+    spec.loader.exec_module(module)
+    return module
+
+
+def text_for(rule: type[Rule]) -> str:
+    """Return the text of the module generated for a rule class."""
+    base = inspect.getsource(template)
+    head, rest = base.split(START, 1)
+    tail = rest.split(END, 1)[1].split("\n", 1)[1]
+    title = f'"""Generated by plastic for the rule {rule.__name__}; do not edit.\n\n'
+    doc = head.split('"""', 2)
+    loop = tail.replace("@njit(nogil=True)\ndef run_", "@njit(nogil=True, cache=True)\ndef run_")
+    # a function that another one calls in a loop must not be compiled on its own as well
+    return f'{title}{doc[1].lstrip()}"""{doc[2]}{_rule_part(rule)}\n{loop}'
+
+
+def _rule_part(rule: type[Rule]) -> str:
+    rows, hooks = Rows.of(rule), rule.hooks()
+    pieces = [
+        f"# ---- the rule {rule.__name__} ----",
+        f"RATES = {rule.reads == 'rates'}",
+        f"N_WEIGHTS, N_VARIABLES, N_CELL = {len(rule.weights)}, {len(rows.inputs)}, {len(rows.cell)}",
+        f"PRE_ADDS = {tuple(rule.traces[n].jump == 'add' for n in rows.pre)}",
+        f"POST_ADDS = {tuple(rule.traces[n].jump == 'add' for n in rows.post)}",
+        f"HAS_FLOW, HAS_CELL_FLOW = {'flow' in hooks}, {'cell_flow' in hooks}",
+    ]
+    for hook in HOOKS:
+        if hook in hooks:
+            changed, text = _plain_function(rule, hook)
+            pieces.append(text)
+        else:
+            changed = ()
+        pieces.append(_connection(rule, rows, hook, hooks.get(hook), changed))
+    pieces.append(_plain_function(rule, "factor")[1] if "factor" in vars(rule) else "")
+    pieces.append(_factor(rule, rows))
+    pieces.append("# ---- end of the rule ----")
+    return "\n\n\n".join(piece for piece in pieces if piece) + "\n"
+
+
+#: hook -> (arguments of the connecting function, array that takes the changes)
+CONNECTIONS = {
+    "on_pre": ("p, S, C, X, Y, fx, fy, i, site, t, D", "D"),
+    "on_post": ("p, S, C, X, Y, fx, fy, i, site, t, amplitude, D", "D"),
+    "on_presentation": ("p, S, C, i, t, pre_rate, post_rate, D", "D"),
+    "cell_on_post": ("p, C, Y, fy, t, DC", "DC"),
+    "cell_on_presentation": ("p, C, t, post_rate, DC", "DC"),
+    "flow": ("p, S, i, dt, D", "D"),
+    "cell_flow": ("p, C, dt, DC", "DC"),
+}
+
+
+def _connection(
+    rule: type[Rule], rows: Rows, hook: str, arguments: tuple[str, ...] | None, changed: tuple[str, ...]
+) -> str:
+    """Return the function that feeds a hook from the arrays and adds what it changes."""
+    signature, into = CONNECTIONS[hook]
+    lines = ["@njit(nogil=True)", f"def add_{hook}({signature}):"]
+    if arguments is None:
+        return "\n".join([*lines, "    pass"])
+    reads = [_read(rows, hook, name) for name in arguments]
+    reads += [f"p[{k}]" for k in range(len(rule.parameters))]
+    lines.append(f"    changes = {hook}({', '.join(reads)})")
+    for k, name in enumerate(changed):
+        place = f"D[{rows.inputs.index(name)}, i]" if into == "D" else f"DC[{rows.cell.index(name)}]"
+        lines.append(f"    {place} += changes[{k}]")
+    return "\n".join(lines)
+
+
+def _read(rows: Rows, hook: str, name: str) -> str:
+    """Return the expression that reads one argument of a hook from the arrays."""
+    if name in rows.inputs:
+        return f"S[{rows.inputs.index(name)}, i]"
+    if name in rows.cell:
+        return f"C[{rows.cell.index(name)}]"
+    if name in rows.pre:
+        return f"X[{rows.pre.index(name)}, i] * fx[{rows.pre.index(name)}]"
+    if name in rows.post:
+        site = "0" if hook.startswith("cell_") else "site"
+        return f"Y[{rows.post.index(name)}, {site}] * fy[{rows.post.index(name)}]"
+    return name
+
+
+def _factor(rule: type[Rule], rows: Rows) -> str:
+    lines = ["@njit(nogil=True)", "def factor_of(p, S, i):"]
+    if "factor" not in vars(rule):
+        first = next(iter(rule.weights.values()))
+        start = first.start
+        value = f"p[{list(rule.parameters).index(start)}]" if isinstance(start, str) else repr(start)
+        return "\n".join([*lines, f"    return S[0, i] / {value}"])
+    names = tuple(inspect.signature(rule.factor).parameters)[1:]
+    reads = [_read(rows, "factor", n) for n in names] + [f"p[{k}]" for k in range(len(rule.parameters))]
+    return "\n".join([*lines, f"    return factor({', '.join(reads)})"])
+
+
+def _plain_function(rule: type[Rule], hook: str) -> tuple[tuple[str, ...], str]:
+    """Return the names a hook changes and its text as a function of plain numbers."""
+    owner = f"{rule.__name__}.{hook}"
+    try:
+        source = textwrap.dedent(inspect.getsource(getattr(rule, hook)))
+    except (OSError, TypeError) as error:
+        raise RuleError(f"{owner}: its source cannot be read, so it cannot be compiled") from error
+    function = ast.parse(source).body[0]
+    assert isinstance(function, ast.FunctionDef)
+    changed = () if hook == "factor" else _changed(owner, rule, hook, function)
+    arguments = [a.arg for a in function.args.args[1:]]
+    clash = set(arguments) & set(rule.parameters)
+    if clash:
+        raise RuleError(f"{owner}: {sorted(clash)} name both a parameter and an argument")
+    _Plain(owner, rule, changed, hook).visit(function)
+    function.args.args = [ast.arg(a) for a in [*arguments, *rule.parameters]]
+    function.args.kw_defaults, function.args.defaults, function.returns = [], [], None
+    function.decorator_list = [ast.parse("njit(nogil=True)", mode="eval").body]
+    ast.fix_missing_locations(function)
+    _no_globals(owner, function)
+    return changed, ast.unparse(function)
+
+
+def _changed(owner: str, rule: type[Rule], hook: str, function: ast.FunctionDef) -> tuple[str, ...]:
+    """Return the variables that a hook's returns name, checked against its scope."""
+    rows = Rows.of(rule)
+    allowed = rows.cell if hook.startswith("cell_") else rows.inputs
+    found: list[str] = []
+    for node in ast.walk(function):
+        if not isinstance(node, ast.Return):
+            continue
+        if not isinstance(node.value, ast.Dict):
+            raise RuleError(f'{owner}: return named changes, like {{"{allowed[0]}": ...}}')
+        for key in node.value.keys:
+            name = key.value if isinstance(key, ast.Constant) else None
+            if name not in allowed:
+                raise RuleError(
+                    f"{owner} changes {name!r}; it may change {', '.join(allowed) or 'nothing'}"
+                )
+            if name not in found:
+                found.append(str(name))
+    if not found:
+        raise RuleError(f"{owner}: it changes nothing; leave the hook out")
+    return tuple(found)
+
+
+class _Plain(ast.NodeTransformer):
+    """Turn ``self.x`` into ``x`` and ``return {"w": e}`` into ``return (e, ...)``."""
+
+    def __init__(self, owner: str, rule: type[Rule], changed: tuple[str, ...], hook: str) -> None:
+        self.owner, self.rule, self.changed, self.hook = owner, rule, changed, hook
+
+    def visit_Attribute(self, node: ast.Attribute) -> Any:  # noqa: N802 - ast's name
+        if isinstance(node.value, ast.Name) and node.value.id == "self":
+            if node.attr not in self.rule.parameters:
+                raise RuleError(
+                    f"{self.owner}: self.{node.attr} is no parameter; parameters are "
+                    f"{', '.join(self.rule.parameters)}"
+                )
+            return ast.Name(node.attr, ast.Load())
+        return self.generic_visit(node)
+
+    def visit_Return(self, node: ast.Return) -> Any:  # noqa: N802
+        self.generic_visit(node)
+        if self.hook == "factor" or not isinstance(node.value, ast.Dict):
+            return node
+        given = {
+            key.value: value
+            for key, value in zip(node.value.keys, node.value.values, strict=True)
+            if isinstance(key, ast.Constant)
+        }
+        node.value = ast.Tuple(
+            [given.get(name, ast.Constant(0.0)) for name in self.changed], ast.Load()
+        )
+        return node
+
+    def visit_arg(self, node: ast.arg) -> ast.arg:
+        return ast.arg(node.arg)
+
+
+def _no_globals(owner: str, function: ast.FunctionDef) -> None:
+    """Refuse a hook that reads anything but its arguments, its own names and mathematics."""
+    known = {a.arg for a in function.args.args} | ALLOWED | {"njit"}
+    known |= {
+        n.id for n in ast.walk(function) if isinstance(n, ast.Name) and isinstance(n.ctx, ast.Store)
+    }
+    for node in ast.walk(function):
+        if isinstance(node, ast.Name) and node.id not in known:
+            kind = "built-in" if hasattr(builtins, node.id) else "global name"
+            raise RuleError(
+                f"{owner}: it uses the {kind} {node.id!r}; a hook may use its arguments, self, "
+                "its own names and math"
+            )
