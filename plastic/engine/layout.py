@@ -1,113 +1,101 @@
-"""What the compiled engine is given and what it fills: plain arrays, named.
+"""What the compiled engine is given and what it fills: few arrays, with named fields.
 
 `Wiring` is shared by the cells of one arm, `Cells` has one row per cell, `Log` is filled. Times
-are whole steps of ``dt``; voltages are relative to rest; conductances are nS. Sites are the places
+are whole steps of ``dt``; voltages are mV relative to rest; conductances nS. Sites are the places
 where learning inputs see the spikes of the cell; site 0 is the soma.
 """
 
 from __future__ import annotations
 
-from typing import NamedTuple
+from typing import Any, NamedTuple
 
 import numpy as np
 from numpy.typing import NDArray
 
-F = NDArray[np.float64]
-I = NDArray[np.int64]  # noqa: E741 - the letter is the type's own
+Floats = NDArray[np.float64]
+Ints = NDArray[np.int64]
+Records = NDArray[Any]
+
+
+def _fields(integers: str, floats: str) -> np.dtype[Any]:
+    return np.dtype([(n, "i8") for n in integers.split()] + [(n, "f8") for n in floats.split()])
+
+
+#: single numbers of an arm
+PLAN = _fields(
+    "seed n_steps n_nodes refractory tick window deterministic clocked",
+    "dt rm ri tau_m reset bap_length bap_loss bap_recovery bap_floor",
+)
+#: a stretch of dendrite between two nodes; a child of -1 is a sealed stub; um
+STRETCH = _fields("parent child widens", "length diameter")
+#: receptors of one kind at one node; `slot` counts the nodes that have receptors
+GROUP = _fields("node slot", "reversal keep_decay keep_rise norm")
+#: a contact; recovery and facilitation in ms (0: none), neck in Mohm
+CONTACT = _fields("group learner added excites", "cv recovery facilitation neck")
+#: where learning inputs see a spike of the cell; distance in um
+SITE = _fields("delay", "distance")
+#: an event; an injected spike has contact -1 and learner -1
+EVENT = _fields("step contact learner ordinal", "")
+#: one channel of a route; `exponent` is sign * share, `keep` the factor per tick
+CHANNEL = _fields("target excess delay", "exponent lowest highest keep")
+#: one cell: its own number (for its random draws), the load at its soma (nS), its threshold
+CELL = _fields("number", "load threshold")
+#: baseline release of one contact in one cell; quantum in nS
+RELEASE = _fields("", "sites probability highest quantum")
+#: what a run leaves of a cell; `fault` is 0, or 1 + the learner whose weight is no number
+ENDED = _fields("spikes fault steps", "")
 
 
 class Wiring(NamedTuple):
     """All that the cells of one arm share."""
 
-    seed: int
-    dt: float  # ms
-    n_steps: int
-    deterministic: int  # 1: every release is its mean
-    clocked: int  # 1: never jump over quiet stretches
-    # geometry: stretches of dendrite between nodes; a child of -1 is a sealed stub
-    n_nodes: int
-    stretch_parent: I
-    stretch_child: I
-    stretch_length: F  # um
-    stretch_diameter: F  # um
-    rm: float  # ohm cm^2
-    ri: float  # ohm cm
-    tau_m: float  # ms
-    # spikes at the soma
-    reset: float  # mV, relative to rest
-    refractory: int  # steps
-    # receptors, grouped by node, kinetics and reversal
-    group_node: I
-    group_reversal: F  # mV, relative to rest
-    group_keep_decay: F  # factor per step
-    group_keep_rise: F  # factor per step, 0 for a single exponential
-    group_norm: F
-    # contacts
-    contact_group: I
-    contact_learner: I  # learning input, or -1
-    contact_added: I  # 1: exists only by the route added_contact
-    contact_excites: I
-    contact_cv: F  # quantal CV
-    contact_recovery: F  # ms, 0: no depletion
-    contact_facilitation: F  # ms, 0: none
-    contact_neck: F  # Mohm
-    contact_beyond: I  # (stretch, contact) 1: the contact lies at or beyond the stretch
-    # learning inputs, sorted by site
-    learner_site: I
-    site_first: I  # (site + 1,) range of learners at each site
-    site_delay: I  # steps
-    site_distance: F  # um
-    # back-propagated spike
-    bap_length: F  # (4,) length constant um, loss per spike, recovery ms, floor
-    # events, sorted by step; an injected spike has contact -1 and learner -1
-    event_step: I
-    event_contact: I
-    event_learner: I
-    event_ordinal: I
-    reading_step: I
-    # route channels
-    channel_target: I
-    channel_excess: I
-    channel_exponent: F  # sign * share
-    channel_lowest: F
-    channel_highest: F
-    channel_delay: I  # ticks
-    channel_keep: F  # factor per tick
-    tick: int  # steps; 0: expression is immediate
-    stretch_widens: I
-    # rule
-    taus_pre: F  # ms
-    taus_post: F
-    starts: F
-    cell_starts: F
-    low: F
-    window: int  # steps
+    plan: Records  # (1,)
+    stretches: Records
+    beyond: Ints  # (stretch, contact) 1: the contact lies at or beyond the stretch
+    groups: Records
+    slot_node: Ints  # the node of each slot
+    contacts: Records
+    sites: Records
+    learner_site: Ints  # learning inputs are sorted by site
+    site_first: Ints  # (site + 1,) range of learners at each site
+    events: Records  # sorted by step, injected spikes first
+    reading_step: Ints
+    channels: Records
+    taus_pre: Floats  # ms
+    taus_post: Floats  # ms
+    starts: Floats
+    cell_starts: Floats
+    low: Floats
 
 
 class Cells(NamedTuple):
     """What differs between cells; every array has the cell first."""
 
-    number: I  # the cell's own number, for its random draws
-    load: F  # nS, soma and the rest of the cell
-    threshold: F  # mV, relative to rest
-    sites: F  # (cell, contact)
-    probability: F
-    probability_highest: F
-    quantum: F  # nS
-    high: F  # (cell, weight, learner)
-    parameters: F  # (cell, parameter)
+    cells: Records
+    release: Records  # (cell, contact)
+    high: Floats  # (cell, weight, learner)
+    parameters: Floats  # (cell, parameter)
 
 
 class Log(NamedTuple):
     """What a run leaves; every array has the cell first."""
 
-    variables: F  # (cell, reading, variable, learner)
-    factor: F  # (cell, reading, learner)
-    expressed: F  # (cell, reading, channel, learner)
-    diameter: F  # (cell, reading, stretch) multiple
-    cell_states: F  # (cell, reading, state)
-    spike_step: I  # (cell, spike)
-    spike_count: I  # (cell,)
-    releases: F  # (cell, contact) total conductance released, nS
-    fault: I  # (cell,) 0, or 1 + learner whose weight is no number
-    steps: I  # (cell,) membrane steps taken, jumps not counted
+    variables: Floats  # (cell, reading, variable, learner)
+    factor: Floats  # (cell, reading, learner)
+    expressed: Floats  # (cell, reading, channel, learner)
+    diameter: Floats  # (cell, reading, stretch) as a multiple
+    cell_states: Floats  # (cell, reading, state)
+    spike_step: Ints  # (cell, spike)
+    releases: Floats  # (cell, contact) total conductance released, nS
+    ended: Records  # (cell,)
+
+
+def table(dtype: np.dtype[Any], **columns: Any) -> Records:
+    """Return a record array with the given columns; every field of `dtype` must be given."""
+    if set(columns) != set(dtype.names or ()):
+        raise ValueError(f"fields {sorted(columns)} are not those of {dtype.names}")
+    shape = np.broadcast_shapes(*(np.shape(v) for v in columns.values()))
+    made = np.zeros(shape, dtype)
+    for name, value in columns.items():
+        made[name] = value
+    return made

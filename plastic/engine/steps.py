@@ -18,7 +18,7 @@ R30, R27, R31, R11 = np.uint64(30), np.uint64(27), np.uint64(31), np.uint64(11)
 ONE, PARTS = np.uint64(1), np.uint64(4096)
 FRACTION, NORMAL_A, NORMAL_B, REFILL = 2045, 2046, 2047, 2048
 DOUBLINGS = 26  # powers of two of one step that a jump may use
-CUT = 1e-7  # nS: a conductance below it is over
+CUT = 1e-6  # nS: a conductance below it is over
 
 
 @njit(nogil=True)
@@ -85,13 +85,13 @@ def trials_of(stream, ordinal, sites):
 
 
 @njit(nogil=True)
-def decay(z):
-    """Return exp(-z); a Pade form where it is exact to 1e-14."""
-    if z < 0.06:
-        even = 120.0 + 12.0 * z * z
-        odd = 60.0 * z + z * z * z
-        return (even - odd) / (even + odd)
-    return math.exp(-z)
+def relaxed(z):
+    """Return (1 - exp(-z)) / z; below 0.3 by the [4/4] Pade form of exp, exact to 1e-12."""
+    if z < 0.3:
+        square = z * z
+        odd = 840.0 + 20.0 * square
+        return 2.0 * odd / (1680.0 + square * (180.0 + square) + z * odd)
+    return -math.expm1(-z) / z
 
 
 @njit(nogil=True)
@@ -107,44 +107,52 @@ def product(a, b, out):
 
 
 @njit(nogil=True)
-def membrane(parent, child, length, diameter, multiple, rm, ri, load, tau_m, conductance, leak):
+def membrane(stretches, multiple, rm, ri, load, conductance, leak):
     """Fill the conductance matrix (nS) and the leak (nS) of every node.
 
     Each stretch is the DC-exact pi-equivalent of its cable, a stub a sealed end; capacitance
-    follows leak (C = tau_m leak), so every node keeps the membrane time constant.
+    follows leak (C = tau_m leak), so every node keeps the membrane time constant. The arrays may
+    be longer than there are nodes.
     """
-    conductance[:, :] = 0.0
-    leak[:] = 0.0
-    leak[0] = load
-    for s in range(parent.shape[0]):
-        d = diameter[s] * multiple[s]
-        extent = length[s] / (100.0 * math.sqrt(d * rm / (4.0 * ri)))
-        semi = 1e3 * math.pi * d**1.5 / (2.0 * math.sqrt(rm * ri))
-        if child[s] < 0:
-            leak[parent[s]] += semi * math.tanh(extent)
+    for i in range(leak.shape[0]):
+        leak[i] = load if i == 0 else 0.0
+        for j in range(leak.shape[0]):
+            conductance[i, j] = 0.0
+    for s in range(stretches.shape[0]):
+        one = stretches[s]
+        d = one.diameter * multiple[s]
+        extent = one.length / (100.0 * math.sqrt(d * 1e-4 * rm / (4.0 * ri)) * 100.0)
+        semi = 1e9 * math.pi * (d * 1e-4) ** 1.5 / (2.0 * math.sqrt(rm * ri))
+        near, far = one.parent, one.child
+        if far < 0:
+            leak[near] += semi * math.tanh(extent)
             continue
         link = semi / math.sinh(extent)
         shunt = semi * math.tanh(extent / 2.0)
-        leak[parent[s]] += shunt
-        leak[child[s]] += shunt
-        conductance[parent[s], child[s]] -= link
-        conductance[child[s], parent[s]] -= link
-        conductance[parent[s], parent[s]] += link
-        conductance[child[s], child[s]] += link
+        leak[near] += shunt
+        leak[far] += shunt
+        conductance[near, far] -= link
+        conductance[far, near] -= link
+        conductance[near, near] += link
+        conductance[far, far] += link
     for i in range(leak.shape[0]):
         conductance[i, i] += leak[i]
 
 
 @njit(nogil=True)
-def propagators(conductance, leak, tau_m, dt, powers, work):
-    """Fill powers[j] with the exact propagator of 2**j steps of the quiet membrane."""
-    n = leak.shape[0]
+def propagators(conductance, leak, n, tau_m, dt, powers, work):
+    """Fill powers[j] with the exact propagator of 2**j steps of the quiet membrane, transposed."""
     biggest = 0.0
+    for i in range(work.shape[1]):
+        for j in range(work.shape[1]):
+            powers[0, i, j] = 0.0
+            for layer in range(3):
+                work[layer, i, j] = 0.0
     for i in range(n):
         row = 0.0
         for j in range(n):
-            work[0, i, j] = -conductance[i, j] * dt / (tau_m * leak[i])
-            row += abs(work[0, i, j])
+            work[0, j, i] = -conductance[i, j] * dt / (tau_m * leak[i])
+            row += abs(work[0, j, i])
         biggest = max(biggest, row)
     halvings = 0
     while biggest > 0.25:
@@ -154,8 +162,8 @@ def propagators(conductance, leak, tau_m, dt, powers, work):
     for i in range(n):
         for j in range(n):
             work[0, i, j] *= scale
-            work[1, i, j] = 1.0 if i == j else 0.0
-            powers[0, i, j] = work[1, i, j]
+        work[1, i, i] = 1.0
+        powers[0, i, i] = 1.0
     for order in range(1, 12):
         product(work[1], work[0], work[2])
         for i in range(n):
@@ -164,30 +172,47 @@ def propagators(conductance, leak, tau_m, dt, powers, work):
                 powers[0, i, j] += work[1, i, j]
     for _ in range(halvings):
         product(powers[0], powers[0], work[1])
-        powers[0, :, :] = work[1]
+        for i in range(n):
+            for j in range(n):
+                powers[0, i, j] = work[1, i, j]
     for j in range(1, powers.shape[0]):
         product(powers[j - 1], powers[j - 1], powers[j])
 
 
 @njit(nogil=True)
-def apply(matrix, v, out):
-    """Replace v by matrix v."""
-    n = v.shape[0]
-    for i in range(n):
-        total = 0.0
-        for k in range(n):
-            total += matrix[i, k] * v[k]
-        out[i] = total
-    for i in range(n):
-        v[i] = out[i]
+def apply(turned, v, out):
+    """Replace v by the product of a matrix, given transposed, and v; four rows at a time."""
+    if v.shape[0] == 1:
+        v[0] *= turned[0, 0]
+    else:
+        for row in range(0, v.shape[0], 4):
+            one = two = three = four = 0.0
+            for col in range(v.shape[0]):
+                one += turned[col, row] * v[col]
+                two += turned[col, row + 1] * v[col]
+                three += turned[col, row + 2] * v[col]
+                four += turned[col, row + 3] * v[col]
+            out[row] = one
+            out[row + 1] = two
+            out[row + 2] = three
+            out[row + 3] = four
+        for row in range(v.shape[0]):
+            v[row] = out[row]
+
+
+@njit(nogil=True)
+def padded(n):
+    """Return the length of node arrays: one, or the next multiple of four."""
+    return 1 if n == 1 else (n + 3) // 4 * 4
 
 
 @njit(nogil=True)
 def jump(powers, steps, v, out):
     """Take `steps` quiet steps at once, exactly."""
     if steps >> powers.shape[0] > 0:
-        v[:] = 0.0  # two hours and more: below the smallest number
-        return
+        steps = 0  # two hours and more: below the smallest number
+        for node in range(v.shape[0]):
+            v[node] = 0.0
     j = 0
     while steps > 0:
         if steps & 1:
@@ -197,43 +222,45 @@ def jump(powers, steps, v, out):
 
 
 @njit(nogil=True)
-def synaptic_half(v, group_node, group_reversal, slow, fast, half_over_c, total, drive):
+def synaptic_half(v, slot_node, total, drive, half_over_c):
     """Let the open conductances act on their nodes for half a step (exact for constant g)."""
-    for g in range(group_node.shape[0]):
-        open_now = slow[g] - fast[g]
-        node = group_node[g]
-        total[node] += open_now
-        drive[node] += open_now * group_reversal[g]
-    for node in range(v.shape[0]):
-        if total[node] > 0.0:
-            goal = drive[node] / total[node]
-            v[node] = goal + (v[node] - goal) * decay(total[node] * half_over_c[node])
-        total[node] = 0.0
-        drive[node] = 0.0
+    for slot in range(slot_node.shape[0]):
+        if total[slot] > 0.0:
+            node = slot_node[slot]
+            h = half_over_c[node]
+            v[node] += (drive[slot] - total[slot] * v[node]) * h * relaxed(total[slot] * h)
 
 
 @njit(nogil=True)
-def fade(slow, fast, keep_decay, keep_rise):
-    """Let conductances decay over one step; return whether any is still open."""
-    some_open = False
+def fade(groups, slow, fast, total, drive):
+    """Let conductances decay over one step; return whether any is still open.
+
+    Sums what is open at each slot: conductance (nS) and conductance times reversal (pA).
+    """
+    for slot in range(total.shape[0]):
+        total[slot] = 0.0
+        drive[slot] = 0.0
+    remaining = False
     for g in range(slow.shape[0]):
         if slow[g] > 0.0:
-            slow[g] *= keep_decay[g]
-            fast[g] *= keep_rise[g]
+            slow[g] *= groups[g].keep_decay
+            fast[g] *= groups[g].keep_rise
             if slow[g] < CUT:
                 slow[g] = 0.0
                 fast[g] = 0.0
             else:
-                some_open = True
-    return some_open
+                remaining = True
+                total[groups[g].slot] += slow[g] - fast[g]
+                drive[groups[g].slot] += (slow[g] - fast[g]) * groups[g].reversal
+    return remaining
 
 
 @njit(nogil=True)
 def highest_of(v):
     """Return the largest deviation from rest."""
     top = v[0]
-    for i in range(1, v.shape[0]):
-        top = max(top, v[i])
+    for node in range(1, v.shape[0]):
+        top = max(top, v[node])
     return top
 
 

@@ -27,7 +27,8 @@ import math
 import numpy as np
 from numba import njit
 
-from plastic.engine.steps import (
+from plastic.engine.steps import (  # noqa: F401 - some are used by what is pasted
+    CUT,
     DOUBLINGS,
     apply,
     binomial,
@@ -35,9 +36,11 @@ from plastic.engine.steps import (
     highest_of,
     jump,
     membrane,
+    padded,
     powered,
     propagators,
     quanta,
+    relaxed,
     stream_of,
     synaptic_half,
     trials_of,
@@ -214,18 +217,17 @@ def shortest_of(taus_pre, taus_post):
 
 
 @njit(nogil=True)
-def express(w, cells, c, k, i, expressed, sites, probability, quantum):
-    """Set the physical variables of contact k from the expressed factors of its learner i."""
-    n, u, q, neck = cells.sites[c, k], cells.probability[c, k], cells.quantum[c, k], 1.0
-    added = 0.0
-    for ch in range(w.channel_target.shape[0]):
-        target = w.channel_target[ch]
+def express(contacts, base, k, channels, expressed, i, now):
+    """Set now[k] = (sites, probability, quantum) of a contact from the factors of its learner i."""
+    n, u, q, neck, added = base[k].sites, base[k].probability, base[k].quantum, 1.0, 0.0
+    for ch in range(channels.shape[0]):
+        target = channels[ch].target
         value = powered(
-            expressed[ch, i], w.channel_exponent[ch], w.channel_excess[ch] == 1,
-            w.channel_lowest[ch], w.channel_highest[ch],
+            expressed[ch, i], channels[ch].exponent, channels[ch].excess == 1,
+            channels[ch].lowest, channels[ch].highest,
         )
         if target == 0:
-            u = min(u * value, cells.probability_highest[c, k])
+            u = min(u * value, base[k].highest)
         elif target == 1:
             q *= value
         elif target == 2:
@@ -234,39 +236,37 @@ def express(w, cells, c, k, i, expressed, sites, probability, quantum):
             neck *= value
         elif target == 4:
             added = value
-    sites[k] = n * added if w.contact_added[k] == 1 else n
-    probability[k] = u
-    quantum[k] = q / (1.0 + q * w.contact_neck[k] * neck * 1e-3)
+    now[k, 0] = n * added if contacts[k].added == 1 else n
+    now[k, 1] = u
+    now[k, 2] = q / (1.0 + q * contacts[k].neck * neck * 1e-3)
 
 
 @njit(nogil=True)
-def express_all(w, cells, c, expressed, sites, probability, quantum):
+def express_all(contacts, base, channels, expressed, now):
     """Set the physical variables of every learning contact."""
-    for k in range(w.contact_group.shape[0]):
-        if w.contact_learner[k] >= 0:
-            express(w, cells, c, k, w.contact_learner[k], expressed, sites, probability, quantum)
+    for k in range(contacts.shape[0]):
+        if contacts[k].learner >= 0:
+            express(contacts, base, k, channels, expressed, contacts[k].learner, now)
 
 
 @njit(nogil=True)
-def widen(w, expressed, multiple):
+def widen(stretches, beyond, contacts, channels, expressed, multiple):
     """Set the diameter of every stretch on the path; return whether any moved by 1e-4."""
     moved = False
-    for ch in range(w.channel_target.shape[0]):
-        if w.channel_target[ch] != 5:
+    for ch in range(channels.shape[0]):
+        one = channels[ch]
+        if one.target != 5:
             continue
         for s in range(multiple.shape[0]):
-            if w.stretch_widens[s] == 0:
+            if stretches[s].widens == 0:
                 continue
             total, number = 0.0, 0
-            for k in range(w.contact_group.shape[0]):
-                if w.contact_beyond[s, k] == 1 and w.contact_excites[k] == 1:
-                    i = w.contact_learner[k]
-                    grown = 1.0
-                    if i >= 0:
-                        grown = max(expressed[ch, i], 0.0) ** w.channel_exponent[ch]
-                    total += grown
+            for k in range(contacts.shape[0]):
+                if beyond[s, k] == 1 and contacts[k].excites == 1:
+                    i = contacts[k].learner
+                    total += max(expressed[ch, i], 0.0) ** one.exponent if i >= 0 else 1.0
                     number += 1
-            goal = min(max(total / number, w.channel_lowest[ch]), w.channel_highest[ch])
+            goal = min(max(total / number, one.lowest), one.highest)
             if abs(goal - multiple[s]) > 1e-4 * multiple[s]:
                 moved = True
                 multiple[s] = goal
@@ -274,94 +274,95 @@ def widen(w, expressed, multiple):
 
 
 @njit(nogil=True)
-def tick_expression(w, S, p, history, ticks, expressed):
-    """Let each channel's expressed factor follow the factor of `channel_delay` ticks ago."""
+def tick_expression(p, S, channels, history, ticks, expressed):
+    """Let each channel's expressed factor follow the factor of `delay` ticks ago."""
     depth = history.shape[0]
     for i in range(S.shape[1]):
         history[ticks % depth, i] = factor_of(p, S, i)
-        for ch in range(w.channel_target.shape[0]):
-            goal = 1.0
-            if ticks >= w.channel_delay[ch]:
-                goal = history[(ticks - w.channel_delay[ch]) % depth, i]
-            expressed[ch, i] = goal + (expressed[ch, i] - goal) * w.channel_keep[ch]
+        for ch in range(channels.shape[0]):
+            late = channels[ch].delay
+            goal = history[(ticks - late) % depth, i] if ticks >= late else 1.0
+            expressed[ch, i] = goal + (expressed[ch, i] - goal) * channels[ch].keep
 
 
 @njit(nogil=True)
-def release(w, k, stream, ordinal, t, sites, probability, quantum, use, full, empties, last):
+def release(contacts, k, deterministic, stream, ordinal, t, now, memory):
     """Return the conductance (nS) that contact k releases at its event, and move its dynamics.
 
-    Deterministic: N u R q with the recursion u, R. Stochastic: sites empty and refill one by one,
-    so that the recursion is the mean.
+    now[k] is (sites, probability, quantum), memory[k] (use, full, empties, time of the last
+    event). Deterministic: N u R q with the recursion u, R. Stochastic: sites empty and refill one
+    by one, so that the recursion is the mean.
     """
-    u = probability[k]
-    gap = t - last[k]
-    if w.contact_facilitation[k] > 0.0:
-        u += use[k] * (1.0 - u) * math.exp(-gap / w.contact_facilitation[k])
-    use[k] = u
-    recovery = w.contact_recovery[k]
-    if w.deterministic == 1:
-        if recovery > 0.0:
-            full[k] = 1.0 - (1.0 - full[k]) * math.exp(-gap / recovery)
-        amount = sites[k] * u * full[k] * quantum[k]
-        if recovery > 0.0:
-            full[k] *= 1.0 - u
+    u = now[k, 1]
+    if contacts[k].facilitation > 0.0:
+        u += memory[k, 0] * (1.0 - u) * math.exp((memory[k, 3] - t) / contacts[k].facilitation)
+    recovery = contacts[k].recovery
+    refilled = 1.0
+    if recovery > 0.0:
+        refilled = -math.expm1((memory[k, 3] - t) / recovery)
+    memory[k, 0] = u
+    memory[k, 3] = t
+    if deterministic:
+        memory[k, 1] += (1.0 - memory[k, 1]) * refilled
+        amount = now[k, 0] * u * memory[k, 1] * now[k, 2]
+        memory[k, 1] *= 1.0 - u
     else:
-        trials = trials_of(stream, ordinal, sites[k])
+        available = trials_of(stream, ordinal, now[k, 0])
         if recovery > 0.0:
-            refilled = -math.expm1(-gap / recovery)
-            empties[k] -= binomial(stream, ordinal, empties[k], refilled, REFILL_PART)
-            trials = max(trials - empties[k], 0)
-        count, amount = quanta(stream, ordinal, trials, u, quantum[k], w.contact_cv[k])
-        if recovery > 0.0:
-            empties[k] += count
-    last[k] = t
+            back = binomial(stream, ordinal, int(memory[k, 2]), refilled, REFILL_PART)
+            memory[k, 2] -= back
+            available = max(available - int(memory[k, 2]), 0)
+        count, amount = quanta(stream, ordinal, available, u, now[k, 2], contacts[k].cv)
+        memory[k, 2] += count if recovery > 0.0 else 0
     return amount
 
 
 @njit(nogil=True)
-def note_reading(w, log, c, r, S, C, p, expressed, multiple):
-    """Write down what a reading sees; changes nothing."""
-    for i in range(S.shape[1]):
-        for row in range(N_VARIABLES):
-            log.variables[c, r, row, i] = S[row, i]
-        log.factor[c, r, i] = factor_of(p, S, i)
-        for ch in range(w.channel_target.shape[0]):
-            log.expressed[c, r, ch, i] = log.factor[c, r, i] if w.tick == 0 else expressed[ch, i]
-    for s in range(multiple.shape[0]):
-        log.diameter[c, r, s] = multiple[s]
-    for row in range(N_CELL):
-        log.cell_states[c, r, row] = C[row]
+def rebuild(plan, stretches, multiple, load, conductance, leak, powers, work, half_over_c):
+    """Set the propagators and half a step over the capacitance for the present diameters."""
+    membrane(stretches, multiple, plan.rm, plan.ri, load, conductance, leak)
+    propagators(conductance, leak, plan.n_nodes, plan.tau_m, plan.dt, powers, work)
+    for node in range(plan.n_nodes):
+        half_over_c[node] = 0.5 * plan.dt / (plan.tau_m * leak[node])
 
 
 @njit(nogil=True)
 def run_cell(w, cells, log, c, stop):
-    """Run one cell from the first step to the last."""
-    n_nodes, n_learners = w.n_nodes, w.learner_site.shape[0]
-    n_contacts, n_groups = w.contact_group.shape[0], w.group_node.shape[0]
-    n_sites, n_channels = w.site_delay.shape[0], w.channel_target.shape[0]
-    event_step, event_contact = w.event_step, w.event_contact
-    event_learner, event_ordinal = w.event_learner, w.event_ordinal
-    contact_group, group_norm, dt = w.contact_group, w.group_norm, w.dt
-    p, threshold = cells.parameters[c], cells.threshold[c]
-    low, high = w.low, cells.high[c]
+    """Run one cell from the first step to the last; return False when stopped before the end."""
+    plan, cell, ended = w.plan[0], cells.cells[c], log.ended[c]
+    stretches, contacts, channels, groups = w.stretches, w.contacts, w.channels, w.groups
+    events, reading_step, sites, slot_node = w.events, w.reading_step, w.sites, w.slot_node
+    base, high, low, p = cells.release[c], cells.high[c], w.low, cells.parameters[c]
+    learner_site, site_first, taus_pre, taus_post = (
+        w.learner_site, w.site_first, w.taus_pre, w.taus_post,
+    )
+    spike_step, releases = log.spike_step[c], log.releases[c]
+    n_learners, n_contacts, n_sites = learner_site.shape[0], contacts.shape[0], sites.shape[0]
+    n_channels, n_events, n_readings = channels.shape[0], events.shape[0], reading_step.shape[0]
+    dt, threshold, n_steps, tick = plan.dt, cell.threshold, plan.n_steps, plan.tick
+    deterministic, clocked = plan.deterministic == 1, plan.clocked == 1
 
     # membrane
-    v, scratch = np.zeros(n_nodes), np.zeros(n_nodes)
-    total, drive, half_over_c = np.zeros(n_nodes), np.zeros(n_nodes), np.zeros(n_nodes)
-    conductance, leak = np.zeros((n_nodes, n_nodes)), np.zeros(n_nodes)
-    powers, work = np.zeros((DOUBLINGS, n_nodes, n_nodes)), np.zeros((3, n_nodes, n_nodes))
-    multiple = np.ones(w.stretch_parent.shape[0])
-    slow, fast = np.zeros(n_groups), np.zeros(n_groups)
+    size = padded(plan.n_nodes)
+    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
+    conductance = np.zeros((size, size))
+    powers, work = np.zeros((DOUBLINGS, size, size)), np.zeros((3, size, size))
+    multiple = np.ones(stretches.shape[0])
+    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
+    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
+    rebuild(plan, stretches, multiple, cell.load, conductance, leak, powers, work, half_over_c)
+    single = powers[0]
 
     # learning
     S, D = np.empty((N_VARIABLES, n_learners)), np.zeros((N_VARIABLES, n_learners))
     C, DC = w.cell_starts.copy(), np.zeros(N_CELL)
     for row in range(N_VARIABLES):
-        S[row, :] = w.starts[row]
-    X, Y = np.zeros((w.taus_pre.shape[0], n_learners)), np.zeros((w.taus_post.shape[0], n_sites))
+        for i in range(n_learners):
+            S[row, i] = w.starts[row]
+    X, Y = np.zeros((taus_pre.shape[0], n_learners)), np.zeros((taus_post.shape[0], n_sites))
     fx, fy = np.ones(X.shape[0]), np.ones(Y.shape[0])
-    table_x, table_y = factor_table(w.taus_pre, dt), factor_table(w.taus_post, dt)
-    longest_scale = int(min(LARGEST_SCALE * shortest_of(w.taus_pre, w.taus_post) / dt, 65535.0))
+    table_x, table_y = factor_table(taus_pre, dt), factor_table(taus_post, dt)
+    longest_scale = int(min(LARGEST_SCALE * shortest_of(taus_pre, taus_post) / dt, 65535.0))
     reference, flowed = 0, 0
     pre, counts = np.empty(max(n_learners, 1), np.int64), np.zeros(n_learners)
     post_count, closes = 0.0, -1
@@ -369,23 +370,21 @@ def run_cell(w, cells, log, c, stop):
     # expression
     depth = 1
     for ch in range(n_channels):
-        depth = max(depth, w.channel_delay[ch] + 1)
+        depth = max(depth, channels[ch].delay + 1)
     history, expressed = np.ones((depth, n_learners)), np.ones((n_channels, n_learners))
-    sites, probability, quantum = np.empty(n_contacts), np.empty(n_contacts), np.empty(n_contacts)
+    now = np.empty((n_contacts, 3))
     for k in range(n_contacts):
-        sites[k] = 0.0 if w.contact_added[k] == 1 else cells.sites[c, k]
-        probability[k] = cells.probability[c, k]
-        quantum[k] = cells.quantum[c, k]
-        quantum[k] /= 1.0 + quantum[k] * w.contact_neck[k] * 1e-3
-    express_all(w, cells, c, expressed, sites, probability, quantum)
-    ticks, next_tick = 0, w.tick if w.tick > 0 else w.n_steps + 1
+        now[k, 0] = 0.0 if contacts[k].added == 1 else base[k].sites
+        now[k, 1] = base[k].probability
+        now[k, 2] = base[k].quantum / (1.0 + base[k].quantum * contacts[k].neck * 1e-3)
+    ticks, next_tick = 0, tick if tick > 0 else n_steps + 1
 
-    # release
-    streams = np.empty(n_contacts, np.uint64)
+    # release: use, full, empties, time of the last event
+    streams, memory = np.empty(n_contacts, np.uint64), np.zeros((n_contacts, 4))
     for k in range(n_contacts):
-        streams[k] = stream_of(w.seed, cells.number[c], k)
-    use, full, last = np.zeros(n_contacts), np.ones(n_contacts), np.full(n_contacts, -1e300)
-    empties = np.zeros(n_contacts, np.int64)
+        streams[k] = stream_of(plan.seed, cell.number, k)
+        memory[k, 1] = 1.0
+        memory[k, 3] = -1e300
 
     # spikes on their way to the sites
     pending, amplitude = np.full((n_sites, 64), -1, np.int64), np.zeros((n_sites, 64))
@@ -393,107 +392,118 @@ def run_cell(w, cells, log, c, stop):
     arrived = np.zeros(n_sites)
     train, last_spike, free = 1.0, -1e300, 0
 
-    membrane(
-        w.stretch_parent, w.stretch_child, w.stretch_length, w.stretch_diameter, multiple,
-        w.rm, w.ri, cells.load[c], w.tau_m, conductance, leak,
-    )
-    propagators(conductance, leak, w.tau_m, dt, powers, work)
-    for node in range(n_nodes):
-        half_over_c[node] = 0.5 * dt / (w.tau_m * leak[node])
-
     step, e, r, some_open, taken = 0, 0, 0, False, 0
-    n_events, n_readings = event_step.shape[0], w.reading_step.shape[0]
+    next_event = events[0].step if n_events > 0 else n_steps + 1
+    next_reading = reading_step[0] if n_readings > 0 else n_steps + 1
+    next_arrival = n_steps + 1
     while True:
         # 1. a spike of the cell
         injected = False
-        while e < n_events and event_step[e] == step and event_contact[e] < 0 and event_learner[e] < 0:
+        while next_event == step and events[e].contact < 0 and events[e].learner < 0:
             injected = True
             e += 1
+            next_event = events[e].step if e < n_events else n_steps + 1
         if step >= free and (injected or v[0] >= threshold):
-            number = log.spike_count[c]
-            if number < log.spike_step.shape[1]:
-                log.spike_step[c, number] = step
-            log.spike_count[c] = number + 1
-            v[0] = w.reset
-            free = step + w.refractory
-            train = 1.0 - (1.0 - train) * math.exp(-(step * dt - last_spike) / w.bap_length[2])
+            if ended.spikes < spike_step.shape[0]:
+                spike_step[ended.spikes] = step
+            ended.spikes += 1
+            v[0] = plan.reset
+            free = step + plan.refractory
+            train = 1.0 - (1.0 - train) * math.exp((last_spike - step * dt) / plan.bap_recovery)
             for site in range(n_sites):
-                size = math.exp(-w.site_distance[site] / (w.bap_length[0] * train))
-                if size >= w.bap_length[3]:
-                    pending[site, tail[site] % 64] = step + w.site_delay[site]
-                    amplitude[site, tail[site] % 64] = size
+                local = math.exp(-sites[site].distance / (plan.bap_length * train))
+                if local >= plan.bap_floor:
+                    pending[site, tail[site] % 64] = step + sites[site].delay
+                    amplitude[site, tail[site] % 64] = local
                     tail[site] += 1
-            train *= 1.0 - w.bap_length[1]
+                    next_arrival = min(next_arrival, step + sites[site].delay)
+            train *= 1.0 - plan.bap_loss
             last_spike = step * dt
-        some_arrived = False
-        for site in range(n_sites):
-            arrived[site] = 0.0
-            if head[site] < tail[site] and pending[site, head[site] % 64] == step:
-                arrived[site] = amplitude[site, head[site] % 64]
-                head[site] += 1
-                some_arrived = True
+        some_arrived = next_arrival == step
+        if some_arrived:
+            next_arrival = n_steps + 1
+            for site in range(n_sites):
+                arrived[site] = 0.0
+                if head[site] < tail[site] and pending[site, head[site] % 64] == step:
+                    arrived[site] = amplitude[site, head[site] % 64]
+                    head[site] += 1
+                if head[site] < tail[site]:
+                    next_arrival = min(next_arrival, pending[site, head[site] % 64])
 
         # 2. what is due sees the state before the instant
-        due = some_arrived or (e < n_events and event_step[e] == step)
-        reads = r < n_readings and w.reading_step[r] == step
+        due = some_arrived or next_event == step
         if RATES and closes == step:
-            present(
-                p, S, C, D, DC, low, high, step * dt, counts, post_count, w.window * dt
-            )
+            present(p, S, C, D, DC, low, high, step * dt, counts, post_count, plan.window * dt)
             post_count, closes, flowed = 0.0, -1, step
-        if (HAS_FLOW or HAS_CELL_FLOW) and (due or reads) and step > flowed and closes < 0:
-            flow_to(p, S, C, D, DC, low, high, (step - flowed) * dt)
-            flowed = step
+        if (HAS_FLOW or HAS_CELL_FLOW) and (due or next_reading == step) and closes < 0:
+            if step > flowed:
+                flow_to(p, S, C, D, DC, low, high, (step - flowed) * dt)
+                flowed = step
         if next_tick <= step:
             while next_tick <= step:
-                tick_expression(w, S, p, history, ticks, expressed)
+                tick_expression(p, S, channels, history, ticks, expressed)
                 ticks += 1
-                next_tick += w.tick
-            express_all(w, cells, c, expressed, sites, probability, quantum)
-            if widen(w, expressed, multiple):
-                membrane(
-                    w.stretch_parent, w.stretch_child, w.stretch_length, w.stretch_diameter,
-                    multiple, w.rm, w.ri, cells.load[c], w.tau_m, conductance, leak,
+                next_tick += tick
+            express_all(contacts, base, channels, expressed, now)
+            if widen(stretches, w.beyond, contacts, channels, expressed, multiple):
+                rebuild(
+                    plan, stretches, multiple, cell.load, conductance, leak, powers, work,
+                    half_over_c,
                 )
-                propagators(conductance, leak, w.tau_m, dt, powers, work)
-                for node in range(n_nodes):
-                    half_over_c[node] = 0.5 * dt / (w.tau_m * leak[node])
-        while r < n_readings and w.reading_step[r] == step:
-            note_reading(w, log, c, r, S, C, p, expressed, multiple)
+        while next_reading == step:
+            for i in range(n_learners):
+                for row in range(N_VARIABLES):
+                    log.variables[c, r, row, i] = S[row, i]
+                log.factor[c, r, i] = factor_of(p, S, i)
+                for ch in range(n_channels):
+                    log.expressed[c, r, ch, i] = expressed[ch, i] if tick > 0 else log.factor[c, r, i]
+            for s in range(multiple.shape[0]):
+                log.diameter[c, r, s] = multiple[s]
+            for row in range(N_CELL):
+                log.cell_states[c, r, row] = C[row]
             r += 1
+            next_reading = reading_step[r] if r < n_readings else n_steps + 1
 
         if due:
             # 3. events open conductances
             if stop[0] != 0:
                 return False
             n_pre = 0
-            while e < n_events and event_step[e] == step:
-                k = event_contact[e]
-                if k >= 0 and w.tick == 0 and n_channels > 0 and w.contact_learner[k] >= 0:
-                    i = w.contact_learner[k]
-                    for ch in range(n_channels):
-                        expressed[ch, i] = factor_of(p, S, i)
-                    express(w, cells, c, k, i, expressed, sites, probability, quantum)
-                if k >= 0 and sites[k] > 0.0:
-                    amount = release(
-                        w, k, streams[k], event_ordinal[e], step * dt,
-                        sites, probability, quantum, use, full, empties, last,
-                    )
-                    if amount > 0.0:
-                        g = contact_group[k]
-                        slow[g] += amount * group_norm[g]
-                        if w.group_keep_rise[g] > 0.0:
-                            fast[g] += amount * group_norm[g]
-                        some_open = True
-                        log.releases[c, k] += amount
-                if event_learner[e] >= 0:
-                    pre[n_pre] = event_learner[e]
+            while next_event == step:
+                k, i = events[e].contact, events[e].learner
+                if k >= 0:
+                    j = contacts[k].learner
+                    if tick == 0 and n_channels > 0 and j >= 0:
+                        for ch in range(n_channels):
+                            expressed[ch, j] = factor_of(p, S, j)
+                        express(contacts, base, k, channels, expressed, j, now)
+                    if now[k, 0] > 0.0:
+                        amount = release(
+                            contacts, k, deterministic, streams[k], events[e].ordinal, step * dt,
+                            now, memory,
+                        )
+                        g = contacts[k].group
+                        scaled = amount * groups[g].norm
+                        slow[g] += scaled
+                        if groups[g].keep_rise > 0.0:
+                            fast[g] += scaled  # a dual exponential starts at zero
+                        else:
+                            total[groups[g].slot] += scaled
+                            drive[groups[g].slot] += scaled * groups[g].reversal
+                        some_open = some_open or amount > 0.0
+                        releases[k] += amount
+                if i >= 0:
+                    pre[n_pre] = i
                     n_pre += 1
                 e += 1
+                next_event = events[e].step if e < n_events else n_steps + 1
             # 4. the rule learns
+            if not some_arrived:
+                for site in range(n_sites):
+                    arrived[site] = 0.0
             if RATES:
                 if closes < 0 and (n_pre > 0 or arrived[0] > 0.0):
-                    closes = step + w.window
+                    closes = step + plan.window
                 for k in range(n_pre):
                     counts[pre[k]] += 1.0
                 if arrived[0] > 0.0:
@@ -501,7 +511,7 @@ def run_cell(w, cells, log, c, stop):
             elif n_pre > 0 or some_arrived:
                 gap = step - reference
                 if gap > longest_scale:
-                    rescale(X, Y, w.taus_pre, w.taus_post, gap * dt, fx, fy)
+                    rescale(X, Y, taus_pre, taus_post, gap * dt, fx, fy)
                     reference = step
                 else:
                     for row in range(X.shape[0]):
@@ -510,57 +520,46 @@ def run_cell(w, cells, log, c, stop):
                         fy[row] = table_y[row, 0, gap & 255] * table_y[row, 1, gap >> 8]
                 learn(
                     p, S, C, X, Y, fx, fy, D, DC, low, high, step * dt, pre, n_pre, arrived,
-                    w.site_first, w.learner_site,
+                    site_first, learner_site,
                 )
                 traces_jump(X, Y, fx, fy, pre, n_pre, arrived)
-        if step >= w.n_steps:
+        if step >= n_steps:
             break
 
         # 5. one step of the membrane, or a jump to the next thing due
-        if w.clocked == 0 and not some_open and step >= free and highest_of(v) < threshold:
-            goal = w.n_steps
-            if e < n_events:
-                goal = min(goal, event_step[e])
-            if r < n_readings:
-                goal = min(goal, w.reading_step[r])
+        if not some_open and not clocked and step >= free and highest_of(v) < threshold:
+            goal = min(min(n_steps, next_event), min(next_reading, next_arrival))
             if RATES and closes >= 0:
                 goal = min(goal, closes)
-            for site in range(n_sites):
-                if head[site] < tail[site]:
-                    goal = min(goal, pending[site, head[site] % 64])
             jump(powers, goal - step, v, scratch)
             step = goal
             continue
         if some_open:
-            synaptic_half(
-                v, w.group_node, w.group_reversal, slow, fast, half_over_c, total, drive
-            )
-            apply(powers[0], v, scratch)
-            some_open = fade(slow, fast, w.group_keep_decay, w.group_keep_rise)
-            synaptic_half(
-                v, w.group_node, w.group_reversal, slow, fast, half_over_c, total, drive
-            )
+            synaptic_half(v, slot_node, total, drive, half_over_c)
+            apply(single, v, scratch)
+            some_open = fade(groups, slow, fast, total, drive)
+            synaptic_half(v, slot_node, total, drive, half_over_c)
         else:
-            apply(powers[0], v, scratch)
+            apply(single, v, scratch)
         if step < free:
-            v[0] = w.reset
+            v[0] = plan.reset
         step += 1
         taken += 1
-    log.steps[c] = taken
+    ended.steps = taken
     for i in range(n_learners):
         for row in range(N_VARIABLES):
             if not math.isfinite(S[row, i]):
-                log.fault[c] = i + 1
+                ended.fault = i + 1
     return True
 
 
 @njit(nogil=True)
 def run_cells(w, cells, log, stop):
     """Run every cell of a block; return how many were finished before `stop[0]` was set."""
-    for c in range(cells.load.shape[0]):
+    for c in range(cells.cells.shape[0]):
         if stop[0] != 0 or not run_cell(w, cells, log, c, stop):
             return c
-    return cells.load.shape[0]
+    return cells.cells.shape[0]
 
 
 @njit(nogil=True)
@@ -572,7 +571,8 @@ def run_imposed(
     n_learners = high.shape[1]
     S, D = np.empty((N_VARIABLES, n_learners)), np.zeros((N_VARIABLES, n_learners))
     for row in range(N_VARIABLES):
-        S[row, :] = starts[row]
+        for i in range(n_learners):
+            S[row, i] = starts[row]
     C, DC = cell_starts.copy(), np.zeros(N_CELL)
     X, Y = np.zeros((taus_pre.shape[0], n_learners)), np.zeros((taus_post.shape[0], 1))
     fx, fy = np.ones(X.shape[0]), np.ones(Y.shape[0])
