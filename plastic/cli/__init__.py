@@ -1,0 +1,96 @@
+"""The command line: every command parses, calls one public function, and prints.
+
+Only the standard library is imported before a command runs, so that ``plastic --help`` is quick.
+Each command is a file of its own with ``add_arguments(parser)`` and ``run(args) -> int``.
+
+Exit status: 0 done; 1 something unexpected; 2 an input that cannot be used, said in one line;
+130 stopped by Ctrl-C; 141 nobody reads the output any more.
+"""
+
+from __future__ import annotations
+
+import argparse
+import os
+import sys
+import traceback
+from collections.abc import Sequence
+from types import ModuleType
+
+import plastic
+from plastic.cli import compare, impose, list_, new, run, show
+from plastic.errors import PlasticError
+
+#: name -> (module, one line of help)
+COMMANDS: dict[str, tuple[ModuleType, str]] = {
+    "run": (run, "run a study: every rule, route and protocol, in every simulated cell"),
+    "impose": (impose, "apply one rule to spike times from files, without a cell"),
+    "compare": (compare, "print the tables of results that are there already"),
+    "list": (list_, "list rules, routes, protocols and measures"),
+    "show": (show, "show one of them: equation, parameters, sources, references"),
+    "new": (new, "write a commented starter study that runs as it is"),
+}
+
+
+def parser() -> argparse.ArgumentParser:
+    """Return the parser of the whole command line."""
+    top = argparse.ArgumentParser(
+        prog="plastic",
+        description="Compare learning rules and routes of synaptic strengthening on one protocol.",
+        epilog="Start with: plastic new first, then plastic run first.toml",
+    )
+    top.add_argument("--version", action="version", version=f"plastic {plastic.__version__}")
+    commands = top.add_subparsers(dest="command", required=True, metavar="COMMAND")
+    for name, (module, told) in COMMANDS.items():
+        module.add_arguments(commands.add_parser(name, help=told, description=module.__doc__))
+    return top
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run one command and return its exit status.
+
+    Parameters
+    ----------
+    argv : sequence of str, optional
+        The words after ``plastic``; by default those of the command line.
+    """
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="replace")  # a terminal without "†" shows "?", not an error
+    try:
+        args = parser().parse_args(argv)
+        status: int = COMMANDS[args.command][0].run(args)
+        sys.stdout.flush()
+    except SystemExit as stop:  # argparse has printed its message, or its help
+        return stop.code if isinstance(stop.code, int) else 2
+    except KeyboardInterrupt:
+        return _said(_stopped(args.command), 130)
+    except BrokenPipeError:
+        os.dup2(os.open(os.devnull, os.O_WRONLY), sys.stdout.fileno())
+        return 141
+    except PlasticError as error:
+        return _said(str(error), 2)
+    except OSError as error:
+        return _said(f"{error.filename or 'a file'}: {error.strerror or error}", 2)
+    except Exception as error:
+        return _unexpected(error)
+    return status
+
+
+def _said(text: str, status: int) -> int:
+    print(f"plastic: {' '.join(text.split())}", file=sys.stderr)
+    return status
+
+
+def _stopped(command: str) -> str:
+    kept = "; finished blocks are kept, the same command resumes" if command == "run" else ""
+    return f"stopped{kept}"
+
+
+def _unexpected(error: Exception) -> int:
+    if os.environ.get("PLASTIC_TRACEBACK") == "1":
+        traceback.print_exception(error)
+    return _said(
+        f"something went wrong that should not ({type(error).__name__}: {error}); please report "
+        "it with what you ran. PLASTIC_TRACEBACK=1 shows where.",
+        1,
+    )

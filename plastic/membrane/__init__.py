@@ -1,0 +1,1 @@
+"""Formulas of the membrane, the cable, the receptors, release and spikes, on plain arrays."""

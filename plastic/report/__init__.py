@@ -1,0 +1,1 @@
+"""What people read: comparisons, tables and figures."""

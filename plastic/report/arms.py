@@ -1,0 +1,158 @@
+"""One arm (rule x route x protocol) of a comparison, read from a dataset."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field
+
+import numpy as np
+import xarray as xr
+
+from plastic.report.counts import Counts, counts_of
+from plastic.report.flags import integers, meanings, shares
+
+COMPLETE = "complete"
+ALREADY = "already at baseline"
+
+
+@dataclass(frozen=True)
+class Outcome:
+    """What became of the cells of an arm, induced or expressed.
+
+    Attributes
+    ----------
+    repeats : Counts
+        Repeats to criterion of the cells that were not already there at baseline.
+    reached : float
+        Share of those cells that reached the criterion within the protocol.
+    verdicts : mapping of str to float
+        Share of each verdict among all simulated cells, commonest first.
+    """
+
+    repeats: Counts
+    reached: float
+    verdicts: Mapping[str, float]
+
+
+@dataclass(frozen=True)
+class Arm:
+    """One rule x route x protocol.
+
+    Attributes
+    ----------
+    rule, route, protocol, control : str
+        Labels; `control` is empty for a protocol of the study's own.
+    status : str
+        "complete", "not applicable", "stopped" or "not run".
+    cells : int
+        Simulated cells.
+    expressed, induced : Outcome or None
+        By the change a rig can measure at that time, and by the one the rule has induced. None
+        when the arm is not complete.
+    never_causes : mapping of str to float
+        Share of each cause among all simulated cells whose verdict is "never".
+    extrapolated : float
+        Share of simulated cells whose count lies beyond the dose at which the rule was measured.
+    partner_fired : float
+        Mean share of repeats in which the cell fired.
+    """
+
+    rule: str
+    route: str
+    protocol: str
+    control: str
+    status: str
+    cells: int
+    expressed: Outcome | None = None
+    induced: Outcome | None = None
+    never_causes: Mapping[str, float] = field(default_factory=dict)
+    extrapolated: float = 0.0
+    partner_fired: float = float("nan")
+
+    @property
+    def key(self) -> tuple[str, str, str]:
+        """Rule, route and protocol."""
+        return self.rule, self.route, self.protocol
+
+    def outcome(self, kind: str) -> Outcome | None:
+        """Return what became of the cells, "expressed" or "induced"."""
+        return {"expressed": self.expressed, "induced": self.induced}[kind]
+
+    def headline(self, kind: str = "expressed") -> str:
+        """Return the one word or number that stands for the arm.
+
+        The median count when half of the cells get there; otherwise "> 60" (for a protocol of 60
+        repeats), or the verdict that is commonest among the cells that did not.
+        """
+        outcome = self.outcome(kind)
+        if outcome is None:
+            return self.status
+        if np.isfinite(outcome.repeats.median):
+            return outcome.repeats.shown(outcome.repeats.median)
+        failed = [v for v in outcome.verdicts if not v.startswith("reached")]
+        word = failed[0] if failed else "not within"
+        return f"> {outcome.repeats.limit}" if word == "not within" else word
+
+    @property
+    def cause(self) -> str:
+        """The commonest cause of "never", or an empty text."""
+        return next(iter(self.never_causes), "")
+
+
+def arm_of(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> Arm:
+    """Return the arm with these labels.
+
+    Parameters
+    ----------
+    dataset : Dataset
+        In the schema of results.
+    rule, route, protocol : str
+        Labels on the axes of `dataset`.
+    """
+    one = dataset.sel(rule=rule, route=route, protocol=protocol)
+    status = meanings(dataset["status"]).get(int(integers(one["status"])), "not run")
+    control = str(one["control"].values) if "control" in one.coords else ""
+    cells = int(dataset.sizes["cell"])
+    if status != COMPLETE:
+        return Arm(rule, route, protocol, control, status, cells)
+    verdict = integers(one["verdict"])
+    never = {v for v, word in meanings(dataset["verdict"]).items() if word == "never"}
+    stuck = np.isin(verdict, list(never))
+    causes = shares(integers(one["never_cause"])[stuck], meanings(dataset["never_cause"]))
+    return Arm(
+        rule,
+        route,
+        protocol,
+        control,
+        status,
+        cells,
+        expressed=_outcome(dataset, one, ""),
+        induced=_outcome(dataset, one, "_induced"),
+        never_causes={cause: share * float(stuck.mean()) for cause, share in causes.items()},
+        extrapolated=float(np.mean(integers(one["extrapolated"]) == 1)),
+        partner_fired=_mean(one["partner_fired"]),
+    )
+
+
+def limit_of(dataset: xr.Dataset, protocol: str) -> int:
+    """Return how many repeats a protocol has."""
+    done = np.asarray(dataset["repeats"].sel(protocol=protocol).values, dtype=float)
+    return int(np.nanmax(done)) if np.isfinite(done).any() else 0
+
+
+def _mean(values: xr.DataArray) -> float:
+    known = np.asarray(values.values, dtype=float)
+    known = known[np.isfinite(known)]
+    return float(known.mean()) if len(known) else float("nan")
+
+
+def _outcome(dataset: xr.Dataset, one: xr.Dataset, kind: str) -> Outcome:
+    words = meanings(dataset[f"verdict{kind}"])
+    verdict = integers(one[f"verdict{kind}"])
+    starts_there = np.isin(verdict, [v for v, word in words.items() if word == ALREADY])
+    repeats = np.asarray(one[f"repeats_to_criterion{kind}"].values, dtype=float)[~starts_there]
+    return Outcome(
+        counts_of(repeats, limit_of(dataset, str(one["protocol"].values))),
+        float(np.isfinite(repeats).mean()) if len(repeats) else 0.0,
+        shares(verdict, words),
+    )

@@ -1,0 +1,164 @@
+"""The rule x route matrix: repeats to criterion, or why not."""
+
+from __future__ import annotations
+
+import math
+
+from matplotlib.axes import Axes
+from matplotlib.colors import to_hex
+from matplotlib.figure import Figure
+from matplotlib.patches import Rectangle
+
+from plastic.report.arms import Arm
+from plastic.report.comparison import Comparison
+from plastic.report.figures.picture import Picture, Row, Rows, labels, where
+from plastic.report.figures.style import SMALLEST, canvas, height_of, words, wrapped
+from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE
+from plastic.report.matrices import cause_letters, percent
+
+#: lightness of a cell at one repeat and at the protocol's end, so that it reads in grey too
+EARLY, LATE = 0.62, 0.95
+
+
+def matrix(comparison: Comparison, protocol: str) -> Picture:
+    """Return the matrix of one protocol: routes down, rules across.
+
+    Parameters
+    ----------
+    comparison : Comparison
+    protocol : str
+    """
+    arms = [arm for arm in comparison.arms if arm.protocol == protocol]
+    letters = cause_letters(arms)
+    rows = [_row(comparison, arm, letters) for arm in arms]
+    notes = [f"{letter}: {cause}" for cause, letter in letters.items()]
+    if any(arm.extrapolated > 0 for arm in arms):
+        notes.append(f"{EXTRAPOLATED} beyond the dose at which the rule was measured")
+    notes += [
+        f"{ILLUSTRATIVE} {words(rule)} is illustrative here: {comparison.illustrative[rule]}"
+        for rule in comparison.rules
+        if rule in comparison.illustrative
+    ]
+    told = (
+        f"{words(protocol)}: repeats until {words(comparison.input)} alone fires the cell; median, "
+        f"quartiles and share of {comparison.cells} simulated cells that get there, by the change "
+        "expressed at that time"
+    )
+
+    def draw(rows: Rows, width: float) -> Figure:
+        return _draw(rows, width, told, notes)
+
+    return Picture(f"matrix-{protocol}", rows, draw)
+
+
+def _row(comparison: Comparison, arm: Arm, letters: dict[str, str]) -> Row:
+    row: dict[str, float | str] = {
+        "protocol": arm.protocol, "route": arm.route, "rule": arm.rule,
+        "shown": arm.headline(), "illustrative": ILLUSTRATIVE * (arm.rule in comparison.illustrative),
+        "cause": arm.cause, "letter": letters.get(arm.cause, ""),
+        "extrapolated_share": arm.extrapolated,
+    }  # fmt: skip
+    outcomes = {"expressed": arm.expressed, "induced": arm.induced}
+    for kind, outcome in outcomes.items():
+        counts = outcome.repeats if outcome else None
+        row[f"median_repeats_{kind}"] = counts.median if counts else math.nan
+        row[f"lower_quartile_{kind}"] = counts.low if counts else math.nan
+        row[f"upper_quartile_{kind}"] = counts.high if counts else math.nan
+        row[f"share_reached_{kind}"] = outcome.reached if outcome else math.nan
+        row[f"share_never_{kind}"] = outcome.verdicts.get("never", 0.0) if outcome else math.nan
+        row[f"shown_{kind}"] = arm.headline(kind)
+    row["repeats_of_protocol"] = arm.expressed.repeats.limit if arm.expressed else math.nan
+    return row
+
+
+def _draw(rows: Rows, width: float, told: str, notes: list[str]) -> Figure:
+    routes, rules = labels(rows, "route"), labels(rows, "rule")
+    left = 24.0 if width < 120 else 34.0
+    wide = (width - left - 1.5) / len(rules)
+    cells = {
+        (x, y): _lines(where(rows, route=route, rule=rule)[0], wide - 2.2, width > 120)
+        for y, route in enumerate(routes)
+        for x, rule in enumerate(rules)
+    }
+    tall = 2.8 * max(len(lines) for lines in cells.values()) + 2.0
+    signs = {str(row["rule"]): str(row["illustrative"]) for row in rows}
+    names = [wrapped(f"{words(rule)} {signs[rule]}".strip(), wide - 1) for rule in rules]
+    head = wrapped(told, width - 3)
+    foot = "\n".join(wrapped(note, width - 3, SMALLEST) for note in notes)
+    top = height_of(head) + max(map(height_of, names)) + 4.5
+    under = height_of(foot, SMALLEST) * 1.1 + 3.0
+    height = top + tall * len(routes) + under
+    figure = canvas(width, height)
+    figure.text(0.5, 1 - 1.2 / height, head, ha="center", va="top", fontsize=7)
+    figure.text(1.5 / width, 1.2 / height, foot, ha="left", va="bottom", fontsize=SMALLEST)
+    axes = figure.add_axes(
+        (left / width, under / height, wide * len(rules) / width, tall * len(routes) / height)
+    )
+    axes.set(xlim=(0, wide * len(rules)), ylim=(tall * len(routes), 0))
+    for (x, y), lines in cells.items():
+        row = where(rows, route=routes[y], rule=rules[x])[0]
+        _cell(axes, (x * wide, y * tall, wide, tall), row, lines)
+    axes.set_xticks([wide * (x + 0.5) for x in range(len(rules))], names, fontsize=7)
+    places = [wrapped(words(route), left - 2.5) for route in routes]
+    axes.set_yticks([tall * (y + 0.5) for y in range(len(routes))], places, fontsize=7)
+    axes.xaxis.tick_top()
+    axes.tick_params(length=0, pad=2)
+    for spine in axes.spines.values():
+        spine.set_visible(False)
+    return figure
+
+
+def _is_count(shown: str) -> bool:
+    return shown[:1].isdigit() or shown.startswith(">")
+
+
+def _cell(axes: Axes, box: tuple[float, float, float, float], row: Row, lines: list[str]) -> None:
+    x, y, wide, tall = box
+    shown = str(row["shown"])
+    median, limit = float(row["median_repeats_expressed"]), float(row["repeats_of_protocol"])
+    face, hatch = "1.0", "//////" if shown == "never" else None
+    if math.isfinite(median) and limit > 0:
+        shade = EARLY + (LATE - EARLY) * min(median / limit, 1.0)
+        face = to_hex((shade * 0.86, shade * 0.96, min(shade * 1.08, 1.0)))
+    axes.add_patch(
+        Rectangle((x + 0.3, y + 0.3), wide - 0.6, tall - 0.6, facecolor=face, hatch=hatch,
+                  edgecolor="0.72" if hatch else "0.5", linewidth=0.5)
+    )  # fmt: skip
+    back = {"facecolor": "white", "edgecolor": "none", "pad": 0.5} if hatch else None
+    for k, text in enumerate(lines):
+        place = y + tall / 2 + 2.8 * (k - (len(lines) - 1) / 2)
+        first = k == 0
+        axes.text(
+            x + wide / 2, place, text, ha="center", va="center_baseline",
+            size=7 if first else SMALLEST,
+            weight="bold" if first and _is_count(shown) else "normal", bbox=back,
+        )  # fmt: skip
+
+
+def _lines(row: Row, room: float, wide: bool) -> list[str]:
+    """Return the lines of text of a cell that is `room` mm wide."""
+    shown, share = str(row["shown"]), float(row["share_reached_expressed"])
+    if math.isnan(share):
+        return wrapped(shown, room).split("\n")
+    sign = f" {EXTRAPOLATED}" if float(row["extrapolated_share"]) > 0 else ""
+    low, high = float(row["lower_quartile_expressed"]), float(row["upper_quartile_expressed"])
+    never = f"never {percent(float(row['share_never_expressed']))}"
+    never += f" ({row['letter']})" if row["letter"] else ""
+    found = [f"{shown}{sign}"] if _is_count(shown) else [never] if shown == "never" else [shown]
+    if _is_count(shown) and math.isfinite(low):
+        found.append(f"{_count(low, row)} to {_count(high, row)}")
+    found.append(f"{percent(share)} reached")
+    if shown != "never" and float(row["share_never_expressed"]) > 0:
+        found.append(never)
+    if wide and row["shown_induced"] != shown:
+        found.append(f"induced: {row['shown_induced']}")
+    first, *rest = found
+    lines = wrapped(first, room).split("\n")
+    if wide:
+        return [*lines, *wrapped(", ".join(rest), room, SMALLEST).split("\n")]
+    return [*lines, *(part for text in rest for part in wrapped(text, room, SMALLEST).split("\n"))]
+
+
+def _count(value: float, row: Row) -> str:
+    limit = float(row["repeats_of_protocol"])
+    return f"{value:.0f}" if math.isfinite(value) else f"> {limit:.0f}"

@@ -1,0 +1,159 @@
+"""The tables of a comparison: matrix, verdicts, controls, pathways."""
+
+from __future__ import annotations
+
+import math
+import string
+from collections.abc import Mapping, Sequence
+
+from plastic.report.arms import Arm
+from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE, Grid
+from plastic.report.pathways import Pathway
+
+#: by the change a rig can measure at that time, and by the one that has been induced
+KINDS = ("expressed", "induced")
+
+MEANS = {
+    "expressed": "by the change expressed at that time, which a rig would measure",
+    "induced": "by the change induced so far, once it will all be expressed",
+}
+
+
+def percent(share: float) -> str:
+    """Return a share as a percentage for people."""
+    return "-" if math.isnan(share) else f"{100 * share:.0f} %"
+
+
+def cause_letters(arms: Sequence[Arm]) -> dict[str, str]:
+    """Return a letter for each cause of "never" that some arm has as its commonest."""
+    causes = dict.fromkeys(arm.cause for arm in arms if arm.cause)
+    return dict(zip(causes, string.ascii_lowercase, strict=False))
+
+
+def matrix_grid(
+    arms: Sequence[Arm], kind: str, illustrative: Mapping[str, str], doses: Mapping[str, int]
+) -> Grid:
+    """Return one protocol's matrix: routes down, rules across.
+
+    Parameters
+    ----------
+    arms : sequence of Arm
+        All of one protocol.
+    kind : "expressed" or "induced"
+    illustrative, doses : mapping
+        Of rule label to the reason, and to the repeats at which it was measured.
+    """
+    rules, routes = _ordered(arm.rule for arm in arms), _ordered(arm.route for arm in arms)
+    by_key = {(arm.rule, arm.route): arm for arm in arms}
+    letters = cause_letters(arms)
+    rows = [
+        [route, *(_entry(by_key[rule, route], kind, letters) for rule in rules)]
+        for route in routes
+    ]
+    columns = ["route", *(f"{r} {ILLUSTRATIVE}" if r in illustrative else r for r in rules)]
+    limit = max((arm.expressed.repeats.limit for arm in arms if arm.expressed), default=0)
+    title = f"{arms[0].protocol}: repeats to criterion, {kind} ({limit} repeats)"
+    notes = [
+        f"median (quartiles) and share of {arms[0].cells} simulated cells that reach it, "
+        f"{MEANS[kind]}"
+    ]
+    notes += [f"[{letter}] {cause}" for cause, letter in letters.items()]
+    notes += extrapolation_notes(arms, doses)
+    notes += [f"{ILLUSTRATIVE} {r}: illustrative here: {illustrative[r]}" for r in rules
+              if r in illustrative]  # fmt: skip
+    return Grid(title, columns, rows, notes)
+
+
+def extrapolation_notes(arms: Sequence[Arm], doses: Mapping[str, int]) -> list[str]:
+    """Return the footnote on counts beyond the dose of their rule; none when there are none."""
+    rules = _ordered(arm.rule for arm in arms if arm.extrapolated > 0)
+    if not rules:
+        return []
+    told = [f"{r} ({doses[r]} repeats)" if r in doses else f"{r} (dose not told)" for r in rules]
+    return [f"{EXTRAPOLATED} extrapolated: beyond the dose the rule was measured at: "
+            f"{', '.join(told)}"]  # fmt: skip
+
+
+def verdict_grid(arms: Sequence[Arm]) -> Grid:
+    """Return the share of every verdict and of every cause of "never", one line per arm."""
+    rows = [
+        [arm.rule, arm.route, _told(arm.expressed.verdicts), _told(arm.induced.verdicts),
+         _told(arm.never_causes)]
+        for arm in arms
+        if arm.expressed is not None and arm.induced is not None
+    ]  # fmt: skip
+    columns = ["rule", "route", "verdicts, expressed", "verdicts, induced", "why never"]
+    note = f"shares of {arms[0].cells} simulated cells"
+    return Grid(f"{arms[0].protocol}: what became of the cells", columns, rows, [note])
+
+
+def controls_grid(arms: Sequence[Arm], pathways: Sequence[Pathway], name: str) -> Grid:
+    """Return the controls beside their protocols, on the routes they were run on.
+
+    Parameters
+    ----------
+    arms, pathways : sequence of Arm and of Pathway
+    name : str
+        The input the criterion is about.
+    """
+    of = {(p.rule, p.route, p.protocol): p for p in pathways if p.input == name}
+    routes = {(arm.rule, arm.route) for arm in arms if arm.control and arm.key in of}
+    rows = [
+        [arm.rule, arm.route, arm.protocol, epsp_text(of[arm.key]), percent(of[arm.key].reached),
+         percent(arm.partner_fired)]
+        for arm in sorted(arms, key=lambda a: list(_ordered(x.rule for x in arms)).index(a.rule))
+        if (arm.rule, arm.route) in routes and arm.key in of
+    ]  # fmt: skip
+    columns = ["rule", "route", "protocol", f"EPSP of {name}, % of baseline", "reached",
+               "repeats with a spike"]  # fmt: skip
+    note = "EPSP at the last reading, median (quartiles) over simulated cells"
+    return Grid("Controls", columns, rows, [note])
+
+
+def pathway_grid(pathways: Sequence[Pathway], name: str) -> Grid:
+    """Return input specificity: each learning input beside the one the criterion is about."""
+    inputs = _ordered(p.input for p in pathways)
+    if len(inputs) < 2:
+        return Grid("Input specificity", ["rule"], [])
+    inputs.sort(key=lambda label: label != name)
+    of = {(p.protocol, p.rule, p.route, p.input): p for p in pathways if not p.control}
+    arms = _ordered(key[:3] for key in of)
+    rows = [
+        [*arm, label, of[(*arm, label)].role, epsp_text(of[(*arm, label)])]
+        for arm in arms
+        for label in inputs
+    ]
+    columns = ["protocol", "rule", "route", "input", "pathway", "EPSP, % of baseline"]
+    note = "at the last reading, median (quartiles) over simulated cells"
+    return Grid("Input specificity: paired and control pathways", columns, rows, [note])
+
+
+def epsp_text(pathway: Pathway) -> str:
+    """Return an EPSP in percent of baseline with its quartiles."""
+    if math.isnan(pathway.percent):
+        return "-"
+    return f"{pathway.percent:.0f} ({pathway.low:.0f} to {pathway.high:.0f})"
+
+
+def _entry(arm: Arm, kind: str, letters: Mapping[str, str]) -> str:
+    outcome = arm.outcome(kind)
+    if outcome is None:
+        return arm.status
+    sign = f" {EXTRAPOLATED}" if arm.extrapolated > 0 else ""
+    told = [f"{outcome.repeats}{sign}", f"{percent(outcome.reached)} reached"]
+    head = arm.headline(kind)
+    if head in outcome.verdicts and not head.startswith("reached"):
+        told = [f"{head} {percent(outcome.verdicts[head])}", f"{percent(outcome.reached)} reached"]
+    never = outcome.verdicts.get("never", 0.0)
+    if never and head != "never":
+        told.append(f"never {percent(never)}")
+    letter = letters.get(arm.cause, "")
+    return ", ".join(told) + (f" [{letter}]" if letter and never else "")
+
+
+def _told(shares: Mapping[str, float]) -> str:
+    return ", ".join(f"{word} {percent(share)}" for word, share in shares.items()) or "-"
+
+
+def _ordered(labels: object) -> list[str]:
+    return list(dict.fromkeys(labels))  # type: ignore[call-overload]

@@ -1,0 +1,127 @@
+"""Bad input, part 1: keys, numbers, types.
+
+Every case is a small edit of the starter study and what the refusal must say: old text, new
+text, and parts of the message (key path, value, what is allowed).
+"""
+
+from __future__ import annotations
+
+Case = tuple[str, str, list[str]]
+
+VALUES: dict[str, Case] = {
+    # keys
+    "unknown key at the top": (
+        "cells = 20", "cels = 20",
+        ["study.toml: no key is called 'cels'", "did you mean 'cells'?", "compare"],
+    ),
+    "unknown key in a table": (
+        'rest = "-68 mV"', 'rests = "-68 mV"',
+        ["study.toml: cell: no key is called 'rests'; did you mean 'rest'?", "refractory"],
+    ),
+    "unknown key in a dendrite": (
+        'diameter = "2 um"', 'diamter = "2 um"',
+        ["cell.dendrite.apical: no key", "'diamter'; did you mean 'diameter'?"],
+    ),
+    "unknown key in a protocol": (
+        "repeat = {", "repeats = {",
+        ["protocol.bursts: no key is called 'repeats'; did you mean 'repeat'?"],
+    ),
+    "missing key": (
+        'rest = "-68 mV"', "",
+        ["study.toml: cell.rest: missing; a potential such as '-68 mV'"],
+    ),
+    "missing table": ("[compare]", "[compared]", ["no key is called 'compared'", "'compare'"]),
+    "missing kinetics": (
+        'rise = "0.5 ms", decay = "7 ms"', 'rise = "0.5 ms"',
+        ["input.brake.receptor.decay: missing; a time such as '10 ms'"],
+    ),
+    # units and numbers
+    "wrong dimension": (
+        'refractory = "2 ms"', 'refractory = "2 mV"',
+        ["study.toml: cell.refractory = '2 mV': in mV, not a time (write it like '10 ms')"],
+    ),
+    "no unit": ('rest = "-68 mV"', "rest = -68", ["cell.rest = -68: without a unit", "'-68 mV'"]),
+    "unknown unit": ('rest = "-68 mV"', 'rest = "-68 mW"', ["cell.rest = '-68 mW': in mW, not"]),
+    "no quantity": ('rest = "-68 mV"', 'rest = "low"', ["cell.rest = 'low': no quantity"]),
+    "decimal comma": (
+        'refractory = "2 ms"', 'refractory = "2,5 ms"', ["cell.refractory = '2,5 ms': no quantity"],
+    ),
+    "NaN": ('rest = "-68 mV"', 'rest = "nan mV"', ["cell.rest = 'nan mV': not a finite number"]),
+    "NaN as a number": (
+        "quantum_cv = 0 }", "quantum_cv = nan }",
+        ["input.brake.release.quantum_cv = nan: not a finite number"],
+    ),
+    "infinite": (
+        'length = "350 um"', 'length = "inf um"', ["apical.length = 'inf um': not a finite"],
+    ),
+    "true is no number": (
+        "input_resistance_cv = 0.3", "input_resistance_cv = true",
+        ["cell.input_resistance_cv = True: no quantity"],
+    ),
+    # ranges
+    "negative diameter": (
+        'diameter = "2 um"', 'diameter = "-2 um"',
+        ["cell.dendrite.apical.diameter = '-2 um': must be above 0 um and at most 100000 um"],
+    ),
+    "probability above 1": (
+        "probability = 0.4, highest = 0.9, quantum = \"0.3", "probability = 1.4, quantum = \"0.3",
+        ["input.weak.release.probability = 1.4: must be above 0 and at most 1"],
+    ),
+    "probability above its highest": (
+        "probability = 0.4, highest = 0.9, quantum = \"0.3",
+        "probability = 0.95, highest = 0.9, quantum = \"0.3",
+        ["input.weak.release.probability = 0.95: must be at most release.highest, 0.9"],
+    ),
+    "negative spread": (
+        'sd = "3 mV"', 'sd = "-3 mV"', ["cell.threshold.sd = '-3 mV': must be at least 0 mV"],
+    ),
+    "no cells": ("cells = 20", "cells = 0", ["cells = 0: must be a whole number from 1"]),
+    "half a cell": ("cells = 20", "cells = 20.5", ["cells = 20.5: must be a whole number"]),
+    "negative seed": ("seed = 1", "seed = -1", ["seed = -1: must be a whole number from 0"]),
+    "too many sites": (
+        "sites = 50", "sites = 5000",
+        ["input.weak.release.sites = 5000: must be above 0 and at most 2000"],
+    ),
+    "rest above threshold": (
+        'rest = "-68 mV"', 'rest = "-50 mV"',
+        ["cell.rest = '-50 mV': must be below the threshold, -55 mV"],
+    ),
+    "reset above threshold": (
+        'reset = "-65 mV"', 'reset = "-55 mV"', ["cell.reset = '-55 mV': must be below"],
+    ),
+    "EPSP beyond the driving force": (
+        'target = "7 mV"', 'target = "70 mV"',
+        ["weak.baseline_epsp.target = '70 mV': must be below the driving force at rest, 68 mV"],
+    ),
+    "share of trials": (
+        "alone_fires = 0.5", "alone_fires = 1",
+        ["compare.criterion.alone_fires = 1: must be above 0 and below 1"],
+    ),
+    # types
+    "text for a list": (
+        'learns = ["weak"]', 'learns = "weak"',
+        ["compare.learns = 'weak': must be a list in square brackets"],
+    ),
+    "number for a table": (
+        "membrane = {", "membrane = 3 #", ["cell.membrane = 3: must be a table of keys"],
+    ),
+    "number for text": (
+        'title = "A first study"', "title = 3", ["title = 3: must be text in quotes"],
+    ),
+    "text for a flag": (
+        "seed = 1", 'deterministic = "yes"', ["deterministic = 'yes': must be true or false"],
+    ),
+    "no rules": ("rules = [", "rules = [] #", ["compare.rules = []: must not be empty"]),
+    # one of several words
+    "unknown spike mechanism": (
+        'spikes = "leaky"', 'spikes = "bursting"', ["cell.spikes = 'bursting': must be 'leaky'"],
+    ),
+    "unknown match": (
+        'match = "same_factor"', 'match = "fair"',
+        ["compare.match = 'fair': must be 'same_factor' or 'sensitivity'"],
+    ),
+    "unknown ceiling": (
+        'at_ceiling = "stop"', 'at_ceiling = "hide"',
+        ["compare.at_ceiling = 'hide': must be 'stop' or 'hidden'"],
+    ),
+}  # fmt: skip
