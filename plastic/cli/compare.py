@@ -8,7 +8,9 @@ from pathlib import Path
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
-    parser.add_argument("folder", metavar="DIR", type=Path, help="a folder that `plastic run` wrote")
+    parser.add_argument(
+        "folder", metavar="DIR", type=Path, help="a folder that `plastic run` wrote"
+    )
     parser.add_argument("--csv", type=Path, metavar="FILE", help="also write one line per arm")
     parser.add_argument("--figures", type=Path, metavar="DIR", help="also draw the figures again")
 

@@ -11,13 +11,17 @@ from typing import Any
 
 #: lines of the printed table; --out holds every event
 SHOWN = 12
+#: spikes from which compiling the rule takes less time than running it in plain Python
+COMPILED = 20_000
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Declare the arguments of the command."""
     parser.add_argument("rule", metavar="RULE", help="a rule; `plastic list rules` names them")
     parser.add_argument("--pre", type=Path, required=True, metavar="FILE", help="presynaptic times")
-    parser.add_argument("--post", type=Path, required=True, metavar="FILE", help="spikes of the cell")
+    parser.add_argument(
+        "--post", type=Path, required=True, metavar="FILE", help="spikes of the cell"
+    )
     parser.add_argument("--unit", default="ms", help="unit of the times in the files (default: ms)")
     parser.add_argument("--set", metavar="NAME", help="a parameter set of the rule")
     parser.add_argument(
@@ -49,7 +53,7 @@ def _rule(name: str, chosen: str | None, given: list[str]) -> Any:
     """Return the rule with its set and the parameters given as NAME=VALUE."""
     import plastic
     from plastic.errors import DataError, UnknownName
-    from plastic.units import INTERNAL, number_in
+    from plastic.units import INTERNAL, QuantityError, number_in
 
     cls = plastic.rules.find(name)
     dimensions = {unit or "1": dimension for dimension, unit in INTERNAL.items()}
@@ -62,8 +66,12 @@ def _rule(name: str, chosen: str | None, given: list[str]) -> Any:
         if key not in cls.parameters:
             raise UnknownName("parameter", key, cls.parameters, where=name)
         unit = cls.parameters[key].unit
-        plain = value.strip().lstrip("+-")[:1].isdigit() and _is_number(value)
-        values[key] = float(value) if plain else number_in(value, dimensions.get(unit, "number"))
+        try:
+            plain = _is_number(value)
+            values[key] = float(value) if plain else number_in(value, dimensions[unit])
+        except QuantityError as error:
+            told = str(error).removeprefix(f"{value!r} is ")
+            raise DataError("--param", key, value, told) from None
     return cls.from_set(chosen, **values) if chosen else cls(**values)
 
 
@@ -83,10 +91,11 @@ def _table(rule: Any, pre: list[float], post: list[float]) -> tuple[Any, float]:
     from plastic.report.grid import Grid
 
     events = np.unique([*pre, *post])
-    end = float(plastic.impose(rule, pre, post)["time"][-1])
+    many = len(events) > COMPILED
+    end = float(plastic.impose(rule, pre, post, compiled=many)["time"][-1])
     after = np.nextafter(events, np.inf)
     late = max(end, float(np.nextafter(after[-1], np.inf)))
-    result = plastic.impose(rule, pre, post, end=late, readings=[*after, late])
+    result = plastic.impose(rule, pre, post, end=late, readings=[*after, late], compiled=many)
     factor = result["factor"].values[0]
     names = [name for name in result.data_vars if name != "factor"]
     states = [np.ravel(result[name].values) for name in names]

@@ -70,7 +70,9 @@ def _protocols(study: Any) -> list[Any]:
         if schedule.control:
             continue
         mine = [n for n, s in schedules.items() if s.control and n.startswith(f"{name}, ")]
-        notes = [f"controls: {', '.join(n.removeprefix(f'{name}, ') for n in mine)}"] if mine else []
+        notes = (
+            [f"controls: {', '.join(n.removeprefix(f'{name}, ') for n in mine)}"] if mine else []
+        )
         notes += [f"left out: {k}: {why}" for k, why in left_out.items() if k.startswith(name)]
         grids.append(protocol_grid(schedule, notes))
     return grids

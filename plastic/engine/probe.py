@@ -269,7 +269,7 @@ def count_chances(sites, probability, out):
 def tail_of(goal, chances, count, q, cv):
     """Return the chance that the summed conductance of the quanta reaches `goal` > 0."""
     total = 0.0
-    for k in range(1, count):
+    for k in range(1, count if q > 0.0 else 0):
         if chances[k] < 1e-14:
             continue
         if cv == 0.0:

@@ -131,7 +131,8 @@ def _kept(interval: ArrayLike, tau: ArrayLike) -> Floats:
     interval, tau = np.broadcast_arrays(np.asarray(interval, float), np.asarray(tau, float))
     if not (np.all(tau >= 0) and np.all(interval >= 0)):
         raise ValueError(f"tau = {tau} ms, interval = {interval} ms: neither may be negative")
-    return np.where(tau > 0, np.exp(-interval / np.where(tau > 0, tau, 1.0)), 0.0)
+    with np.errstate(over="ignore"):  # a tau next to 0 keeps nothing, which is what e^-inf says
+        return np.where(tau > 0, np.exp(-interval / np.where(tau > 0, tau, 1.0)), 0.0)
 
 
 def paired_pulse_ratio(
@@ -246,7 +247,8 @@ def tail(
     k = np.arange(float(probabilities.shape[-1]))
     mean, spread = k * quantum, np.sqrt(k) * cv * quantum
     safe = np.where(spread > 0, spread, 1.0)
-    by_chance = ndtr((mean - wanted) / safe)
+    with np.errstate(over="ignore"):  # a cv next to 0 is a step, which is what ndtr(inf) says
+        by_chance = ndtr((mean - wanted) / safe)
     by_step = mean >= wanted * (1 - ROUNDING)
     total = np.sum(probabilities * np.where(spread > 0, by_chance, by_step), axis=-1)
     reached = np.where(wanted[..., 0] <= 0, 1.0, np.minimum(total, 1.0))

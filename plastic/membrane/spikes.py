@@ -96,7 +96,8 @@ class BackPropagation:
         gaps = np.diff(times)
         if times.ndim != 1 or not np.all(gaps > 0):
             raise ValueError("spike times must be one increasing list")
-        kept = np.exp(-gaps / self.recovery) if self.recovery > 0 else np.zeros_like(gaps)
+        with np.errstate(over="ignore"):  # a recovery next to 0 keeps nothing of the loss
+            kept = np.exp(-gaps / self.recovery) if self.recovery > 0 else np.zeros_like(gaps)
         r = np.ones(times.shape)
         for i in range(len(gaps)):
             r[i + 1] = 1 - (1 - r[i] * (1 - self.train_loss)) * kept[i]

@@ -185,9 +185,7 @@ def _row(comparison: Comparison, arm: Arm) -> dict[str, object]:
     return row
 
 
-def _outcome_row(
-    kind: str, outcome: Outcome | None, verdicts: Sequence[str]
-) -> dict[str, object]:
+def _outcome_row(kind: str, outcome: Outcome | None, verdicts: Sequence[str]) -> dict[str, object]:
     keys = [f"repeats_{part}_{kind}" for part in ("median", "lower_quartile", "upper_quartile")]
     keys += [f"share_reached_{kind}", *(f"{_key(v)}_{kind}" for v in verdicts)]
     if outcome is None:

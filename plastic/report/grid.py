@@ -34,7 +34,14 @@ class Grid:
     def __post_init__(self) -> None:
         for row in self.rows:
             if len(row) != len(self.columns):
-                raise ValueError(f"{self.title}: {len(row)} entries for {len(self.columns)} columns")
+                raise ValueError(
+                    f"{self.title}: {len(row)} entries for {len(self.columns)} columns"
+                )
+
+    @property
+    def headed(self) -> bool:
+        """Whether the columns have names."""
+        return any(self.columns)
 
     def plain(self) -> str:
         """Return aligned text without colours or line drawing; no line is ever wrapped."""
@@ -42,6 +49,7 @@ class Grid:
         widths = [max(len(row[k]) for row in table) for k in range(len(self.columns))]
         lines = ["  ".join(c.ljust(w) for c, w in zip(row, widths, strict=True)) for row in table]
         lines.insert(1, "  ".join("-" * w for w in widths))
+        lines = lines if self.headed else lines[2:]
         text = [line.rstrip() for line in lines]
         return "\n".join([*([self.title] if self.title else []), *text, *self.notes])
 

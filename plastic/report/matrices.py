@@ -47,8 +47,7 @@ def matrix_grid(
     by_key = {(arm.rule, arm.route): arm for arm in arms}
     letters = cause_letters(arms)
     rows = [
-        [route, *(_entry(by_key[rule, route], kind, letters) for rule in rules)]
-        for route in routes
+        [route, *(_entry(by_key[rule, route], kind, letters) for rule in rules)] for route in routes
     ]
     columns = ["route", *(f"{r} {ILLUSTRATIVE}" if r in illustrative else r for r in rules)]
     limit = max((arm.expressed.repeats.limit for arm in arms if arm.expressed), default=0)

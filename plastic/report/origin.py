@@ -6,7 +6,7 @@ import xarray as xr
 
 from plastic.errors import PlasticError
 from plastic.protocols import Schedule
-from plastic.rules import Rule
+from plastic.rules._interface import Rule
 from plastic.study.file import parse_study
 from plastic.study.model import Study
 

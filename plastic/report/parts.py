@@ -8,11 +8,12 @@ from typing import Any
 
 from plastic.catalogue import Catalogue
 from plastic.errors import UnknownName
+from plastic.measures import Measure
 from plastic.parameters import Parametrised
 from plastic.protocols import Protocol
 from plastic.report.grid import Grid
 from plastic.routes import Route
-from plastic.rules import Rule
+from plastic.rules._interface import Rule
 
 #: the catalogues by the name of their room
 ROOMS: Mapping[str, Catalogue[Any]] = {
@@ -67,7 +68,7 @@ def _traits(part: Any) -> list[str]:
 
 def _shown(room: str, name: str, part: Any) -> list[Grid]:
     about = [["what", room.removesuffix("s")], *_facts(part)]
-    lines = (inspect.getdoc(part) or "").splitlines()
+    lines = (inspect.getdoc(part) or "").replace("``", "").splitlines()
     grids = [Grid(name, ["", ""], about, ["", *lines])]
     if inspect.isclass(part) and issubclass(part, Parametrised):
         grids += [_parameters(part), _sets(part)]
@@ -94,6 +95,8 @@ def _facts(part: Any) -> list[list[str]]:
             ("limit", part.limit_cause),
             ("touches other inputs", "yes" if part.touches_others else "no"),
         ]
+    if inspect.isclass(part) and issubclass(part, Measure):
+        facts += [("unit", part.unit), ("in results", part.long_name)]
     return [[key, text] for key, text in facts if text]
 
 
@@ -124,4 +127,4 @@ def _keys(part: type[Protocol]) -> Grid:
 def _default(value: Any) -> str:
     if value is None or value == ():
         return "none"
-    return f"{value:g}" if isinstance(value, float) else str(value)
+    return f"{value:.10g}" if isinstance(value, float) else str(value)

@@ -118,4 +118,3 @@ def parent_of(protocol: str, control: str) -> str:
     """Return the protocol that a control belongs to: its label without the control's words."""
     words = f", {control.replace('_', ' ')}"
     return protocol.removesuffix(words) if control else protocol
-

@@ -36,7 +36,7 @@ def printed(grids: Iterable[Grid], console: Console | None = None) -> None:
 
 def rich_table(grid: Grid) -> Table:
     """Return a grid as a rich table, its title above it; square brackets are plain text."""
-    table = Table(title=Text(grid.title), title_justify="left", show_lines=False)
+    table = Table(title=Text(grid.title), title_justify="left", show_header=grid.headed)
     for column in grid.columns:
         table.add_column(Text(column), overflow="fold")
     for row in grid.rows:

@@ -41,7 +41,9 @@ def protocol_grid(schedule: Schedule, notes: Sequence[str] = ()) -> Grid:
     rows = [[f"{at:g}", name, "; ".join(told) or "-"] for (name, at), told in lags.items()]
     rows.sort(key=lambda row: float(row[0]))
     meant = "; ".join(dict.fromkeys(references))
-    told = [f"set lag: t_post - t_pre, {meant}; the realised lag is the cell's own"] if meant else []
+    told = (
+        [f"set lag: t_post - t_pre, {meant}; the realised lag is the cell's own"] if meant else []
+    )
     tests = [f"{name} {len(times)}" for name, times in schedule.test_times.items() if len(times)]
     told += [f"test pulses: {', '.join(tests)}"] if tests else []
     columns = ["time in the repeat (ms)", "event of", "set lags (ms)"]

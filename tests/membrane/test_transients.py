@@ -33,7 +33,7 @@ CELLS = [(500, 2.0, 10.0), (500, 2.0, 0.63), (150, 0.8, 10.0), (816.5, 2.0, 10.0
 
 
 class Input(NamedTuple):
-    """A synapse (peak nS) or an injected current (peak pA) with a dual-exponential time course, ms."""
+    """A synapse (peak nS) or a current (peak pA) with a dual-exponential time course, ms."""
 
     conductance: float
     current: float

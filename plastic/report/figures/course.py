@@ -61,9 +61,7 @@ def time_course(
     return Picture(f"time_course-{protocol}", rows, draw)
 
 
-def controls(
-    dataset: xr.Dataset, protocol: str, *, illustrative: Collection[str] = ()
-) -> Picture:
+def controls(dataset: xr.Dataset, protocol: str, *, illustrative: Collection[str] = ()) -> Picture:
     """Return the EPSP over time beside the controls: a panel per rule, on the controls' route."""
     name, family = criterion_input(dataset), family_of(dataset, protocol)
     route = _controls_route(dataset, family[1:])
@@ -78,9 +76,7 @@ def controls(
         f"{told_illustrative(rules, illustrative)}"
     )
     names = [words(member.removeprefix(f"{protocol}, ")) for member in labels(rows, "protocol")]
-    plan = Plan(
-        told, TIME, AXIS.format(input=words(name)), names, height=28, wide=3, same_y=False
-    )
+    plan = Plan(told, TIME, AXIS.format(input=words(name)), names, height=28, wide=3, same_y=False)
 
     def draw(rows: Rows, width: float) -> Figure:
         sheet = plan.sheet(width, rule_names(rules, illustrative))

@@ -15,8 +15,8 @@ from plastic.report.arms import COMPLETE
 from plastic.report.figures.picture import Picture, Row, Rows, labels, numbers, where
 from plastic.report.figures.sheet import Plan
 from plastic.report.figures.style import THRESHOLD, line, marks, words
-from plastic.report.grid import ILLUSTRATIVE
 from plastic.report.flags import integers, meanings
+from plastic.report.grid import ILLUSTRATIVE
 from plastic.report.pathways import criterion_input
 
 Floats = NDArray[np.float64]

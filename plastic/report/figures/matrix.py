@@ -12,12 +12,22 @@ from matplotlib.patches import Rectangle
 from plastic.report.arms import Arm
 from plastic.report.comparison import Comparison
 from plastic.report.figures.picture import Picture, Row, Rows, labels, where
-from plastic.report.figures.style import SMALLEST, canvas, height_of, words, wrapped
+from plastic.report.figures.style import (
+    SMALLEST,
+    canvas,
+    height_of,
+    on_paper,
+    size_of,
+    words,
+    wrapped,
+)
 from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE
 from plastic.report.matrices import cause_letters, percent
 
 #: lightness of a cell at one repeat and at the protocol's end, so that it reads in grey too
 EARLY, LATE = 0.62, 0.95
+#: mm; from line to line within a cell
+LINE = 2.8
 
 
 def matrix(comparison: Comparison, protocol: str) -> Picture:
@@ -54,7 +64,8 @@ def matrix(comparison: Comparison, protocol: str) -> Picture:
 def _row(comparison: Comparison, arm: Arm, letters: dict[str, str]) -> Row:
     row: dict[str, float | str] = {
         "protocol": arm.protocol, "route": arm.route, "rule": arm.rule,
-        "shown": arm.headline(), "illustrative": ILLUSTRATIVE * (arm.rule in comparison.illustrative),
+        "shown": arm.headline(),
+        "illustrative": ILLUSTRATIVE if arm.rule in comparison.illustrative else "",
         "cause": arm.cause, "letter": letters.get(arm.cause, ""),
         "extrapolated_share": arm.extrapolated,
     }  # fmt: skip
@@ -75,36 +86,33 @@ def _draw(rows: Rows, width: float, told: str, notes: list[str]) -> Figure:
     routes, rules = labels(rows, "route"), labels(rows, "rule")
     left = 24.0 if width < 120 else 34.0
     wide = (width - left - 1.5) / len(rules)
-    cells = {
-        (x, y): _lines(where(rows, route=route, rule=rule)[0], wide - 2.2, width > 120)
+    by_place = {
+        (x, y): where(rows, route=route, rule=rule)[0]
         for y, route in enumerate(routes)
         for x, rule in enumerate(rules)
     }
-    tall = 2.8 * max(len(lines) for lines in cells.values()) + 2.0
+    texts = {at: _lines(row, wide - 2.2, width > 120) for at, row in by_place.items()}
+    tall = LINE * max(map(len, texts.values())) + 2.0
     signs = {str(row["rule"]): str(row["illustrative"]) for row in rows}
     names = [wrapped(f"{words(rule)} {signs[rule]}".strip(), wide - 1) for rule in rules]
     head = wrapped(told, width - 3)
     foot = "\n".join(wrapped(note, width - 3, SMALLEST) for note in notes)
-    top = height_of(head) + max(map(height_of, names)) + 4.5
     under = height_of(foot, SMALLEST) * 1.1 + 3.0
-    height = top + tall * len(routes) + under
-    figure = canvas(width, height)
+    size = (wide * len(rules), tall * len(routes))
+    figure = canvas(width, under + size[1] + max(map(height_of, names)) + height_of(head) + 4.5)
+    height = size_of(figure)[1]
     figure.text(0.5, 1 - 1.2 / height, head, ha="center", va="top", fontsize=7)
     figure.text(1.5 / width, 1.2 / height, foot, ha="left", va="bottom", fontsize=SMALLEST)
-    axes = figure.add_axes(
-        (left / width, under / height, wide * len(rules) / width, tall * len(routes) / height)
-    )
-    axes.set(xlim=(0, wide * len(rules)), ylim=(tall * len(routes), 0))
-    for (x, y), lines in cells.items():
-        row = where(rows, route=routes[y], rule=rules[x])[0]
-        _cell(axes, (x * wide, y * tall, wide, tall), row, lines)
-    axes.set_xticks([wide * (x + 0.5) for x in range(len(rules))], names, fontsize=7)
+    axes = figure.add_axes(on_paper(figure, (left, under, *size)))
+    axes.set(xlim=(0, size[0]), ylim=(size[1], 0))
+    for (x, y), lines in texts.items():
+        _cell(axes, (x * wide, y * tall, wide, tall), by_place[x, y], lines)
     places = [wrapped(words(route), left - 2.5) for route in routes]
+    axes.set_xticks([wide * (x + 0.5) for x in range(len(rules))], names, fontsize=7)
     axes.set_yticks([tall * (y + 0.5) for y in range(len(routes))], places, fontsize=7)
     axes.xaxis.tick_top()
     axes.tick_params(length=0, pad=2)
-    for spine in axes.spines.values():
-        spine.set_visible(False)
+    axes.spines[:].set_visible(False)
     return figure
 
 
@@ -126,7 +134,7 @@ def _cell(axes: Axes, box: tuple[float, float, float, float], row: Row, lines: l
     )  # fmt: skip
     back = {"facecolor": "white", "edgecolor": "none", "pad": 0.5} if hatch else None
     for k, text in enumerate(lines):
-        place = y + tall / 2 + 2.8 * (k - (len(lines) - 1) / 2)
+        place = y + tall / 2 + LINE * (k - (len(lines) - 1) / 2)
         first = k == 0
         axes.text(
             x + wide / 2, place, text, ha="center", va="center_baseline",

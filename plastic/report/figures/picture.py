@@ -1,4 +1,4 @@
-"""A picture is its numbers: drawn from the rows that are written beside it, and from nothing else."""
+"""A picture is its numbers: drawn from the rows written beside it, and from nothing else."""
 
 from __future__ import annotations
 
@@ -54,7 +54,7 @@ class Picture:
                     ("svg", {"metadata": {"Date": None}}),
                 ):
                     path = stem.with_name(f"{stem.name}-{width}mm.{kind}")
-                    figure.savefig(path, format=kind, **options)  # type: ignore[arg-type]
+                    figure.savefig(path, format=kind, **options)
                     paths.append(path)
         return paths
 

@@ -11,7 +11,7 @@ from plastic.engine.imposed import impose
 from plastic.report.figures.picture import Picture, Row, Rows, labels, numbers, where
 from plastic.report.figures.sheet import Plan, Sheet
 from plastic.report.figures.style import THRESHOLD, line, words
-from plastic.rules import Rule
+from plastic.rules._interface import Rule
 
 PAIRS = 60
 #: ms; lags of the window, 0 left out because spikes at one instant do not see each other

@@ -55,9 +55,7 @@ def before_after(
     return Picture(f"before_after-{protocol}", rows, draw)
 
 
-def _row(
-    dataset: xr.Dataset, rule: str, route: str, protocol: str, name: str, key: str
-) -> Row:
+def _row(dataset: xr.Dataset, rule: str, route: str, protocol: str, name: str, key: str) -> Row:
     arm = dataset[key].sel(rule=rule, route=route, protocol=protocol, input=name)
     time = np.asarray(dataset["time"].sel(protocol=protocol).values, dtype=float)
     before = arm.isel(reading=np.flatnonzero(time <= 0))
@@ -77,8 +75,7 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
     room = 21.0 if width < 120 else 27.0
     places = [wrapped(words(route), room, SMALLEST) for route in routes]
     step = max(1.6 * len(rules) + 1.6, 2.7 * max(name.count("\n") + 1 for name in places))
-    plan = Plan(told, "", "", names, height=step * len(routes), wide=3, left=room + 1,
-                same_x=False)
+    plan = Plan(told, "", "", names, height=step * len(routes), wide=3, left=room + 1, same_x=False)
     sheet = plan.sheet(width, list(MEASURES.values()))
     for axes, measure in zip(sheet.panels, MEASURES.values(), strict=True):
         for y, route in enumerate(routes):

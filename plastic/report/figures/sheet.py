@@ -8,14 +8,23 @@ from __future__ import annotations
 import math
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
-from plastic.report.figures.style import SMALLEST, canvas, height_of, text_width, wrapped
+from plastic.report.figures.style import (
+    SMALLEST,
+    canvas,
+    height_of,
+    on_paper,
+    size_of,
+    text_width,
+    wrapped,
+)
 
 #: mm
-TICKS_X, TICKS_Y, NAME, EDGE = 4.0, 7.5, 3.8, 1.2
+TICKS_X, TICKS_Y, NAME, EDGE, RIGHT = 4.0, 7.5, 3.8, 1.2, 3.0
 
 
 @dataclass(frozen=True)
@@ -67,10 +76,9 @@ class Plan:
     def sheet(self, width: float, titles: Sequence[str]) -> Sheet:
         """Return the sheet with one panel for each title, `width` mm wide."""
         columns = min(len(titles), self.narrow if width < 120 else self.wide)
-        rows = math.ceil(len(titles) / columns)
         gap = 3.2 if self.same_y else self.left + 2.0
         left = EDGE + (NAME if self.y else 0) + self.left
-        wide = (width - left - 3.0 - gap * (columns - 1)) / columns
+        wide = (width - left - RIGHT - gap * (columns - 1)) / columns
         shown = [wrapped(title, wide) for title in titles]
         over = [
             max(height_of(title) for title in shown[k : k + columns]) + 1.4
@@ -78,39 +86,45 @@ class Plan:
         ]
         told = wrapped(self.heading, width - 2 * EDGE)
         under = self._legend_height(width) + (NAME if self.x else 0) + EDGE
-        body = rows * (self.height + TICKS_X) + sum(over)
-        height = under + body + height_of(told) + EDGE + 1.0
-        figure = canvas(width, height)
-        figure.text(0.5, 1 - EDGE / height, told, ha="center", va="top", fontsize=7)
+        body = len(over) * (self.height + TICKS_X) + sum(over)
+        figure = canvas(width, under + body + height_of(told) + EDGE + 1.0)
         panels: list[Axes] = []
         for k, title in enumerate(shown):
             row, column = divmod(k, columns)
             above = row * (self.height + TICKS_X) + sum(over[: row + 1])
-            bottom = under + body - above - self.height
-            box = (left + column * (wide + gap), bottom, wide, self.height)
-            first = panels[0] if panels else None
-            shares = {
-                "sharex": first if self.same_x else None,
-                "sharey": first if self.same_y else None,
-            }
-            spot = (box[0] / width, box[1] / height, box[2] / width, box[3] / height)
-            axes = figure.add_axes(spot, **shares)
+            box = (left + column * (wide + gap), under + body - above - self.height)
+            axes = self._panel(figure, (*box, wide, self.height), panels[:1])
             axes.set_title(title)
             axes.tick_params(
                 labelbottom=k + columns >= len(titles) or not self.same_x,
                 labelleft=column == 0 or not self.same_y,
             )
             panels.append(axes)
-        middle = (left + width - 3.0) / 2 / width
-        place = self._legend_height(width) + EDGE
-        figure.text(middle, place / height, self.x, ha="center", va="bottom")
-        centre = (under + TICKS_X + (body - TICKS_X - over[0]) / 2) / height
-        figure.text(EDGE / width, centre, self.y, ha="left", va="center", rotation=90)
+        middle = ((left + width - RIGHT) / 2, under + TICKS_X + (body - TICKS_X - over[0]) / 2)
+        self._written(figure, told, middle)
         return Sheet(figure, panels)
+
+    def _panel(self, figure: Figure, box: Sequence[float], first: Sequence[Axes]) -> Axes:
+        """Return an empty panel at left, bottom, width, height in mm."""
+        return figure.add_axes(
+            on_paper(figure, box),
+            sharex=first[0] if first and self.same_x else None,
+            sharey=first[0] if first and self.same_y else None,
+        )
+
+    def _written(self, figure: Figure, told: str, middle: tuple[float, float]) -> None:
+        """Write the heading and the names of the axes; `middle` of the panels in mm."""
+        width, height = size_of(figure)
+        figure.text(0.5, 1 - EDGE / height, told, ha="center", va="top", fontsize=7)
+        place = self._legend_height(width) + EDGE
+        figure.text(middle[0] / width, place / height, self.x, ha="center", va="bottom")
+        figure.text(
+            EDGE / width, middle[1] / height, self.y, ha="left", va="center", rotation=90
+        )  # fmt: skip
 
     def legend(self, sheet: Sheet, width: float) -> None:
         """Put the legend at the foot of the sheet; each name once, from any panel."""
-        found = {}
+        found: dict[str, Any] = {}
         for axes in sheet.panels:
             for handle, name in zip(*axes.get_legend_handles_labels(), strict=True):
                 found.setdefault(name, handle)

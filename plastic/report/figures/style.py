@@ -6,6 +6,7 @@ import functools
 from collections.abc import Iterator, Sequence
 from contextlib import contextmanager
 from dataclasses import dataclass
+from typing import Any
 
 import matplotlib as mpl
 import numpy as np
@@ -23,7 +24,7 @@ DPI = 300
 #: pt, at final size
 SMALLEST = 6.0
 
-_RC = {
+_RC: dict[Any, Any] = {
     "font.family": "DejaVu Sans",
     "font.size": 7,
     "axes.titlesize": 7,
@@ -71,7 +72,7 @@ LINES = (
     Line("#E69F00", (0, (3, 1, 1, 1)), "X"),
 )
 SHADE = "0.90"
-THRESHOLD = {"color": "0.35", "linewidth": 0.8, "linestyle": (0, (4, 2))}
+THRESHOLD: dict[str, Any] = {"color": "0.35", "linewidth": 0.8, "linestyle": (0, (4, 2))}
 
 
 def line(k: int) -> Line:
@@ -94,6 +95,18 @@ def canvas(width: float, height: float) -> Figure:
     width, height : float, mm
     """
     return Figure(figsize=(width * MM, height * MM), dpi=DPI)
+
+
+def size_of(figure: Figure) -> tuple[float, float]:
+    """Return width and height of a figure, mm."""
+    width, height = figure.get_size_inches()
+    return float(width) / MM, float(height) / MM
+
+
+def on_paper(figure: Figure, box: Sequence[float]) -> tuple[float, float, float, float]:
+    """Return left, bottom, width, height given in mm as fractions of the figure."""
+    width, height = size_of(figure)
+    return box[0] / width, box[1] / height, box[2] / width, box[3] / height
 
 
 def words(label: str) -> str:

@@ -1,0 +1,115 @@
+"""`plastic run` and `plastic compare` around results that are given; the simulation has its own."""
+
+from pathlib import Path
+
+import pytest
+
+import plastic
+from plastic.cli import main
+from plastic.cli.run import CAUTION, default_out
+from tests.report.conftest import STUDY, fake_dataset
+
+
+@pytest.fixture
+def study(tmp_path, monkeypatch):
+    monkeypatch.chdir(tmp_path)
+    path = tmp_path / "pathways.toml"
+    path.write_text(STUDY, encoding="utf-8")
+    return path
+
+
+@pytest.fixture
+def asked(monkeypatch):
+    """Let `plastic.run` return the invented results, and keep what it was asked for."""
+    seen = {}
+
+    def run(study, *, out, cells, seed, workers, progress):
+        seen.update(study=study, out=out, cells=cells, seed=seed, workers=workers)
+        out.mkdir(parents=True, exist_ok=True)
+        progress(0, 2)
+        progress(2, 2)
+        return fake_dataset()
+
+    monkeypatch.setattr(plastic, "run", run, raising=False)
+    return seen
+
+
+def test_the_output_folder_is_named_after_the_study():
+    assert default_out(Path("here/two.toml")) == Path("two-results")
+    assert default_out(Path("/x/two_roads/study.toml")) == Path("two_roads-results")
+
+
+def test_options_reach_the_run(study, asked):
+    words = ["--out", "there", "--cells", "7", "--seed", "3", "--workers", "2", "--no-figures"]
+    assert main(["run", str(study), *words]) == 0
+    assert asked["study"].title == "An invented pair of pathways"
+    assert (asked["study"].cells, asked["study"].seed) == (7, 3)
+    assert [asked[key] for key in ("out", "cells", "seed", "workers")] == [Path("there"), 7, 3, 2]
+
+
+def test_a_run_prints_protocols_matrices_and_controls_in_this_order(study, asked, capsys):
+    assert main(["run", str(study), "--no-figures"]) == 0
+    text = capsys.readouterr().out
+    heads = [
+        "single_pairs: baseline 10 min; 60 repeats", "bursts: baseline 10 min; 60 repeats",
+        "single_pairs: repeats to criterion, expressed", "bursts: repeats to criterion, induced",
+        "\nControls\n", "Input specificity", "results.nc",
+    ]  # fmt: skip
+    places = [text.index(head) for head in heads]
+    assert places == sorted(places)
+    assert "controls: unpaired, reversed, test pulses only, inhibition blocked" in text
+    assert "what became of the cells" not in text  # the long table is for `plastic compare`
+
+
+def test_a_run_ends_with_a_caution_in_one_line(study, asked, capsys):
+    assert main(["run", str(study), "--no-figures"]) == 0
+    last = capsys.readouterr().out.splitlines()[-1]
+    assert last == CAUTION
+    assert "do not replace" in last
+
+
+def test_a_run_says_where_everything_went_and_it_is_there(study, asked, capsys, monkeypatch):
+    drawn = []
+    monkeypatch.setattr(
+        "plastic.report.figures.write_figures", lambda ds, folder, progress: drawn.append(folder)
+    )
+    assert main(["run", str(study)]) == 0
+    text = capsys.readouterr().out
+    out = Path("pathways-results")
+    for name in ("comparison.csv", "protocols"):
+        assert str(out / name) in text
+        assert (out / name).exists()
+    assert drawn == [out / "figures"]
+    assert str(out / "figures") in text
+
+
+def test_away_from_a_terminal_there_is_no_progress_bar(study, asked, capsys):
+    assert main(["run", str(study), "--no-figures"]) == 0
+    assert capsys.readouterr().err == ""
+
+
+def test_a_study_that_cannot_be_used_is_one_line(study, asked, capsys):
+    study.write_text(STUDY.replace('title = "', 'titel = "'), encoding="utf-8")
+    assert main(["run", str(study)]) == 2
+    said = capsys.readouterr().err
+    assert "titel" in said
+    assert len(said.splitlines()) == 1
+    assert not Path("pathways-results").exists()
+
+
+def test_a_study_that_is_not_there_is_one_line(tmp_path, capsys):
+    assert main(["run", str(tmp_path / "none.toml")]) == 2
+    assert "there is no such file" in capsys.readouterr().err
+
+
+def test_compare_prints_every_table_and_writes_what_is_asked_for(tmp_path, monkeypatch, capsys):
+    opened = []
+    monkeypatch.setattr(
+        plastic, "load", lambda path: opened.append(path) or fake_dataset(), raising=False
+    )
+    assert main(["compare", str(tmp_path), "--csv", str(tmp_path / "arms.csv")]) == 0
+    text = capsys.readouterr().out
+    assert opened == [tmp_path / "results.nc"]
+    assert text.startswith("An invented pair of pathways\ncriterion: far alone fires the cell")
+    assert "bursts: what became of the cells" in text
+    assert (tmp_path / "arms.csv").read_text().startswith("rule,route,protocol,")
