@@ -50,7 +50,10 @@ def run(code: str, *paths: Path) -> str:
     own = Path(plastic.__file__).parents[1]
     env = {**os.environ, "PYTHONPATH": os.pathsep.join(map(str, [*paths, own]))}
     done = subprocess.run(
-        [sys.executable, "-W", "error", "-c", code], env=env, capture_output=True, text=True,
+        [sys.executable, "-W", "error", "-c", code],
+        env=env,
+        capture_output=True,
+        text=True,
         check=False,
     )
     assert done.returncode == 0, done.stderr

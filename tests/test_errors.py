@@ -20,8 +20,10 @@ from plastic.units import QuantityError
 
 @pytest.mark.parametrize(
     "kind",
-    [StudyError, UnknownName, Misfit, DataError, RuleError, StoreError]
-    + [ParameterError, QuantityError],
+    [
+        *(StudyError, UnknownName, Misfit, DataError, RuleError, StoreError),
+        *(ParameterError, QuantityError),  # these live beside what raises them
+    ],
 )
 def test_one_except_catches_every_deliberate_error(kind: type[Exception]) -> None:
     assert issubclass(kind, PlasticError)
@@ -47,7 +49,9 @@ def test_a_study_error_names_file_key_value_and_what_is_allowed() -> None:
 
 
 def test_a_study_error_without_a_value_shows_none() -> None:
-    assert str(StudyError(file="s.toml", key="cell", allowed="required")) == "s.toml: cell: required"
+    assert (
+        str(StudyError(file="s.toml", key="cell", allowed="required")) == "s.toml: cell: required"
+    )
 
 
 def test_an_unknown_name_offers_the_nearest_then_all() -> None:

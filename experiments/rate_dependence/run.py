@@ -134,24 +134,35 @@ def table(rules: Rules, points: Sequence[Point], schedule: str) -> str:
     return "\n".join(lines)
 
 
+COLUMNS = (
+    "schedule",
+    "rule",
+    "parameters",
+    "lag_ms",
+    "rate_hz",
+    "data_mean",
+    "data_sem",
+    "model",
+    "z",
+    "E_of_rule",
+    "E_published",
+)
+
+
 def write_results(path: Path, rules: Rules, points: Sequence[Point]) -> None:
     """Write one row per schedule, rule and point."""
     with path.open("w", newline="", encoding="utf-8") as file:
         rows = csv.writer(file)
-        rows.writerow(
-            ["schedule", "rule", "parameters", "lag_ms", "rate_hz", "data_mean", "data_sem"]
-            + ["model", "z", "E_of_rule", "E_published"]
-        )
+        rows.writerow(COLUMNS)
         for schedule in (CONTINUOUS, BURSTS):
             for name, rule in rules.items():
                 model = changes(rule, points, schedule)
                 e, z = error(model, points), misfits(model, points)
                 printed = PUBLISHED.get(name, "") if schedule == CONTINUOUS else ""
                 for k, p in enumerate(points):
-                    rows.writerow(
-                        [schedule, name, repr(rule), p.lag, p.rate, p.mean, p.sem]
-                        + [f"{model[k]:.8f}", f"{z[k]:.4f}", f"{e:.6f}", printed]
-                    )
+                    given = (schedule, name, repr(rule), p.lag, p.rate, p.mean, p.sem)
+                    found = (f"{model[k]:.8f}", f"{z[k]:.6f}", f"{e:.6f}", printed)
+                    rows.writerow((*given, *found))
 
 
 #: one colour and pattern per rule, told apart in grey too (Okabe & Ito's colours)
@@ -165,7 +176,7 @@ LOOKS = {
 }
 STYLE = {
     "font.size": 7, "axes.labelsize": 7, "axes.titlesize": 7, "xtick.labelsize": 6,
-    "ytick.labelsize": 6, "legend.fontsize": 6, "figure.labelsize": 7, "axes.linewidth": 0.6, "lines.linewidth": 1.1,
+    "ytick.labelsize": 6, "legend.fontsize": 6, "axes.linewidth": 0.6, "lines.linewidth": 1.1,
     "xtick.major.width": 0.6, "ytick.major.width": 0.6, "axes.spines.top": False,
     "axes.spines.right": False, "legend.frameon": False, "legend.handlelength": 3.2,
     "svg.fonttype": "none", "svg.hashsalt": "plastic",
@@ -209,8 +220,10 @@ def figure_of_rules(rules: Rules, points: Sequence[Point]) -> Figure:
     for axes in grid[:, 0]:
         axes.set_ylabel("change (% of baseline)")
     figure.align_ylabels(grid[:, 0])
-    figure.text(0.565, 0.185, "rate of 60 continuous pairs (Hz)", ha="center")
-    figure.subplots_adjust(left=0.15, right=0.985, top=0.955, bottom=0.25, wspace=0.12, hspace=0.14)
+    figure.text(0.57, 0.178, "rate of 60 continuous pairs (Hz)", ha="center")
+    figure.subplots_adjust(
+        left=0.165, right=0.985, top=0.955, bottom=0.25, wspace=0.12, hspace=0.14
+    )
     legend_of(figure, grid[:, 0])
     return figure
 
@@ -239,7 +252,7 @@ def figure_of_schedules(rule: plastic.Rule, points: Sequence[Point]) -> Figure:
         axes.set_title(f"lag {title} ms")
         axes.set_xticks(range(0, 51, 10))
     columns[0].set_ylabel("change (% of baseline)")
-    figure.text(0.565, 0.2, "rate of pairs (Hz)", ha="center")
+    figure.text(0.565, 0.185, "rate of pairs (Hz)", ha="center")
     figure.subplots_adjust(left=0.15, right=0.985, top=0.92, bottom=0.31, wspace=0.12)
     legend_of(figure, columns[:1])
     return figure

@@ -11,6 +11,7 @@ from __future__ import annotations
 
 import ast
 import builtins
+import functools
 import hashlib
 import importlib.util
 import inspect
@@ -94,11 +95,13 @@ def numbers_of(rule: Rule) -> Numbers:
     )
 
 
+@functools.cache
 def module_for(rule: type[Rule]) -> ModuleType:
     """Return the compiled module of a rule class, generating it when it is not in the cache."""
     return _module(f"rule_{rule.__name__.lower()}", text_for(rule))
 
 
+@functools.cache
 def probes() -> ModuleType:
     """Return the compiled module of the readings, generating it when it is not in the cache."""
     return _module("probe", _cached(_paste(inspect.getsource(probe), _sources(probe))))
@@ -170,7 +173,7 @@ def text_for(rule: type[Rule]) -> str:
 
 
 #: entry points that numba keeps compiled on disk
-CACHED = ("run_cells", "run_imposed", "run_shapes", "run_traces", "run_thresholds", "run_chances",
+CACHED = ("run_cells", "run_imposed", "run_shapes", "run_thresholds", "run_chances",
           "run_two_contacts", "run_tails")
 
 

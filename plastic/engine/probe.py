@@ -43,8 +43,8 @@ def run_probe(
 ):
     """Run one probe into `trace`; return the step at which the soma reaches threshold, or -1.
 
-    With an infinite threshold the whole trace is run; otherwise the probe ends when the soma
-    spikes or is well past its last peak.
+    With an infinite threshold there are no spikes. The probe ends when the soma spikes, or is well
+    past its last peak; what is left of the trace then stays at the last value.
     """
     for node in range(v.shape[0]):
         v[node] = 0.0
@@ -55,6 +55,7 @@ def run_probe(
         total[slot] = 0.0
         drive[slot] = 0.0
     o, top, fired, last = 0, 0.0, -1, open_step[open_step.shape[0] - 1]
+    enough = 0.9 if threshold < 1e300 else 0.45
     step = 0
     while step < trace.shape[0]:
         trace[step] = v[0]
@@ -62,7 +63,7 @@ def run_probe(
             fired = step
             break
         top = max(top, v[0])
-        if threshold < 1e300 and step > last + 50 and v[0] < 0.9 * top:
+        if step > last + 50 and v[0] < enough * top:
             break
         while o < open_step.shape[0] and open_step[o] == step:
             g = open_group[o]
@@ -79,6 +80,8 @@ def run_probe(
         _open = fade(groups, slow, fast, total, drive)
         synaptic_half(v, slot_node, total, drive, half_over_c)
         step += 1
+    for rest in range(step, trace.shape[0]):
+        trace[rest] = v[0]
     return fired
 
 
@@ -135,26 +138,6 @@ def run_shapes(plans, stretches, groups, slot_node, loads, multiples, step, grou
                     trace, v, scratch, slow, fast, total, drive,
                 )
                 shape_of(trace, plan.dt, out[c, m, k])
-
-
-@njit(nogil=True)
-def run_traces(plans, stretches, groups, slot_node, loads, multiples, step, group, amounts, out):
-    """Fill out (cell, step) with the voltage of the soma over rest; one probe per cell."""
-    plan = plans[0]
-    size = padded(plan.n_nodes)
-    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
-    conductance, powers, work = np.zeros((size, size)), np.zeros((1, size, size)), np.zeros((3, size, size))
-    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
-    single = powers[0]
-    for c in range(loads.shape[0]):
-        set_geometry(
-            plan, stretches, multiples[c], loads[c], conductance, leak, powers, work, half_over_c
-        )
-        run_probe(
-            groups, slot_node, single, half_over_c, step, group, amounts[c], math.inf, out[c],
-            v, scratch, slow, fast, total, drive,
-        )
 
 
 @njit(nogil=True)

@@ -12,6 +12,7 @@ from __future__ import annotations
 
 import math
 import threading
+from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
@@ -22,7 +23,7 @@ from plastic.engine.layout import Cells, Floats, Ints, Wiring
 from plastic.routes._interface import Mixture, Route
 
 #: nodes of the tables: own conductance, added conductance, width
-OWN_NODES, ADDED_NODES, WIDTH_NODES = 40, 21, 17
+OWN_NODES, ADDED_NODES, WIDTH_NODES = 32, 17, 17
 #: nS; the tables are even in log(1 + g / SCALE)
 SCALE = 1.0
 #: nS; no conductance up to this one fires the cell: out of reach
@@ -278,49 +279,65 @@ class Reader:
         limited = np.where(widens, np.clip(mean, channel.lowest, channel.highest), 1.0)
         return low, high, np.ascontiguousarray(limited)
 
-    def _made(self, name: str, route: Mixture | None, inhibition: bool) -> tuple[Floats, ...]:
-        """Return (peak, rise, half-width) and g* tables: (cell, across, own) and (cell, across)."""
-        varies = self._varies(name, route)
-        channel = None
+    def _grid(self, name: str, route: Mixture | None) -> tuple[object, Floats, Floats]:
+        """Return a key, the multiples (geometry, stretch) and the added conductances of a table."""
+        varies, key = self._varies(name, route), None
+        multiples, extra = np.ones((1, len(self.wiring.stretches))), np.zeros(1)
         if varies == "width" and route is not None:
-            channel = next(c for c in route.channels.values() if c.target == "diameter")
-        key = (name, varies, inhibition, channel)
+            key = next(c for c in route.channels.values() if c.target == "diameter")
+            multiples = self._width_axis(route)[2]
+        if varies == "added":
+            extra = axis(self.added_top, ADDED_NODES)
+        return (varies, key), multiples, extra
+
+    def _kept(self, key: tuple[object, ...], make: Callable[[], tuple[Floats, ...]]) -> tuple[Floats, ...]:
+        """Return a table, made once per reader."""
         with self._lock:
             if key not in self._tables:
-                self._tables[key] = self._make(name, varies, route, inhibition)
+                self._tables[key] = make()
             return self._tables[key]
 
-    def _make(
-        self, name: str, varies: str, route: Mixture | None, inhibition: bool
-    ) -> tuple[Floats, ...]:
+    def _shapes(self, name: str, route: Mixture | None, inhibition: bool) -> tuple[Floats, ...]:
+        """Return tables of peak, rise and half-width, each (cell, across, own)."""
+        key, multiples, extra = self._grid(name, route)
         wiring, opened = self.wiring, self.openings(name, inhibition=inhibition)
-        multiples = np.ones((1, len(wiring.stretches)))
-        if varies == "width" and route is not None:
-            multiples = self._width_axis(route)[2]
-        own, extra = axis(self.top, OWN_NODES), axis(self.added_top, ADDED_NODES)
-        if varies != "added":
-            extra = np.zeros(1)
-        fixed = self._fixed(opened)
-        pairs = np.array([(g, a) for a in extra for g in own])
-        amounts = fixed[:, None, :] + pairs[None, :, :1] * opened.own + pairs[None, :, 1:] * opened.added
-        group = wiring.contacts["group"][opened.contact].copy()
-        n, shape = len(self.loads), (len(multiples), len(pairs), 4)
-        out = np.zeros((n, *shape))
-        probes().run_shapes(
-            wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads, multiples,
-            opened.step, group, np.ascontiguousarray(amounts), round(EPSP_LENGTH / self.scene.dt), out,
-        )
-        goals = np.zeros((n, len(multiples), len(extra)))
-        probes().run_thresholds(
-            wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
-            self.thresholds, multiples, opened.step, group, fixed, opened.own, opened.added, extra,
-            LARGEST, round(SPIKE_LENGTH / self.scene.dt), goals,
-        )
-        across = max(len(multiples), len(extra))
-        parts = [
-            _filled(out[..., k].reshape(n, across, len(own))) for k in (0, 2, 3)
-        ]
-        return (*parts, goals.reshape(n, across))
+
+        def make() -> tuple[Floats, ...]:
+            own = axis(self.top, OWN_NODES)
+            pairs = np.array([(g, a) for a in extra for g in own])
+            amounts = (
+                self._fixed(opened)[:, None, :]
+                + pairs[None, :, :1] * opened.own + pairs[None, :, 1:] * opened.added
+            )
+            out = np.zeros((len(self.loads), len(multiples), len(pairs), 4))
+            probes().run_shapes(
+                wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
+                multiples, opened.step, wiring.contacts["group"][opened.contact].copy(),
+                np.ascontiguousarray(amounts), round(EPSP_LENGTH / self.scene.dt), out,
+            )
+            across = max(len(multiples), len(extra))
+            return tuple(
+                _filled(out[..., k].reshape(len(self.loads), across, len(own))) for k in (0, 2, 3)
+            )
+
+        return self._kept(("shape", name, inhibition, key), make)
+
+    def _goals(self, name: str, route: Mixture | None, inhibition: bool) -> Floats:
+        """Return the table of g*, nS, (cell, across)."""
+        key, multiples, extra = self._grid(name, route)
+        wiring, opened = self.wiring, self.openings(name, inhibition=inhibition)
+
+        def make() -> tuple[Floats, ...]:
+            goals = np.zeros((len(self.loads), len(multiples), len(extra)))
+            probes().run_thresholds(
+                wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
+                self.thresholds, multiples, opened.step,
+                wiring.contacts["group"][opened.contact].copy(), self._fixed(opened), opened.own,
+                opened.added, extra, LARGEST, round(SPIKE_LENGTH / self.scene.dt), goals,
+            )
+            return (goals.reshape(len(self.loads), -1),)
+
+        return self._kept(("goal", name, inhibition, key), make)[0]
 
     def _fixed(self, opened: Openings) -> Floats:
         """Return what the driven inputs open, at their mean: (cell, opening) in nS."""
@@ -330,7 +347,7 @@ class Reader:
 
     def peaks(self, name: str) -> Floats:
         """Return the EPSP peak (mV) over the table's own conductances, (cell, node)."""
-        return np.asarray(self._made(name, None, True)[0][:, 0], dtype=float)
+        return np.asarray(self._shapes(name, None, True)[0][:, 0], dtype=float)
 
     # ---- readings
 
@@ -355,7 +372,7 @@ class Reader:
         """Return the EPSP of an input alone at every reading, at the mean of its release."""
         if self._varies(name, route) == "both" or self._widened_by_many(route):
             return self._direct_shape(name, state, inhibition)
-        peak, rise, half, _goals = self._made(name, route, inhibition)
+        peak, rise, half = self._shapes(name, route, inhibition)
         along = position(state.conductance(self.own_contacts(name)), self.top, OWN_NODES)
         across = self._across(name, route, state)
         return Shape(
@@ -384,7 +401,7 @@ class Reader:
         self, name: str, route: Mixture | None, state: State, *, inhibition: bool = True
     ) -> Floats:
         """Return the own conductance (nS) that fires the cell at every reading, inf out of reach."""
-        goals = self._made(name, route, inhibition)[3]
+        goals = self._goals(name, route, inhibition)
         across = self._across(name, route, state)
         if across is None:
             return np.repeat(goals[:, :1], state.width.shape[1], axis=1)
@@ -404,7 +421,7 @@ class Reader:
         cv = float(self.wiring.contacts["cv"][own[0]])
         out = np.zeros(mine.shape[:2])
         if self._varies(name, route) == "added":
-            goals = self._made(name, route, inhibition)[3]
+            goals = self._goals(name, route, inhibition)
             roots, weights = np.polynomial.hermite_e.hermegauss(5)
             probes().run_two_contacts(
                 mine, _release(state, self.added_contacts(name)[0]), cv,

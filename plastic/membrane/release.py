@@ -21,7 +21,7 @@ from scipy.special import gammaln, ndtr, xlog1py, xlogy
 
 Floats = NDArray[np.float64]
 
-#: relative slack of "k quanta reach g_star" without quantal variance: 3 * 0.1 must reach 0.3
+#: relative slack of "k quanta reach g_star" without quantal variance: 3 * 0.7 must reach 2.1
 ROUNDING = 1e-12
 
 

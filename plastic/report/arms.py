@@ -7,6 +7,7 @@ from dataclasses import dataclass, field
 
 import numpy as np
 import xarray as xr
+from numpy.typing import NDArray
 
 from plastic.report.counts import Counts, counts_of
 from plastic.report.flags import integers, meanings, shares
@@ -24,7 +25,7 @@ class Outcome:
     repeats : Counts
         Repeats to criterion of the cells that were not already there at baseline.
     reached : float
-        Share of those cells that reached the criterion within the protocol.
+        Share of all simulated cells that were not there at baseline and got there.
     verdicts : mapping of str to float
         Share of each verdict among all simulated cells, commonest first.
     """
@@ -55,6 +56,8 @@ class Arm:
         Share of simulated cells whose count lies beyond the dose at which the rule was measured.
     partner_fired : float
         Mean share of repeats in which the cell fired.
+    lag : float, ms
+        Median over simulated cells of the mean realised lag.
     """
 
     rule: str
@@ -68,6 +71,7 @@ class Arm:
     never_causes: Mapping[str, float] = field(default_factory=dict)
     extrapolated: float = 0.0
     partner_fired: float = float("nan")
+    lag: float = float("nan")
 
     @property
     def key(self) -> tuple[str, str, str]:
@@ -111,7 +115,7 @@ def arm_of(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> Arm:
     """
     one = dataset.sel(rule=rule, route=route, protocol=protocol)
     status = meanings(dataset["status"]).get(int(integers(one["status"])), "not run")
-    control = str(one["control"].values) if "control" in one.coords else ""
+    control = str(one["control"].values)
     cells = int(dataset.sizes["cell"])
     if status != COMPLETE:
         return Arm(rule, route, protocol, control, status, cells)
@@ -130,7 +134,8 @@ def arm_of(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> Arm:
         induced=_outcome(dataset, one, "_induced"),
         never_causes={cause: share * float(stuck.mean()) for cause, share in causes.items()},
         extrapolated=float(np.mean(integers(one["extrapolated"]) == 1)),
-        partner_fired=_mean(one["partner_fired"]),
+        partner_fired=float(np.mean(_known(one["partner_fired"]))),
+        lag=float(np.median(_known(one["realised_lag"]))),
     )
 
 
@@ -140,10 +145,11 @@ def limit_of(dataset: xr.Dataset, protocol: str) -> int:
     return int(np.nanmax(done)) if np.isfinite(done).any() else 0
 
 
-def _mean(values: xr.DataArray) -> float:
-    known = np.asarray(values.values, dtype=float)
-    known = known[np.isfinite(known)]
-    return float(known.mean()) if len(known) else float("nan")
+def _known(values: xr.DataArray) -> NDArray[np.float64]:
+    """Return the finite values, or one NaN when there are none."""
+    found = np.asarray(values.values, dtype=float)
+    found = found[np.isfinite(found)]
+    return found if len(found) else np.array([np.nan])
 
 
 def _outcome(dataset: xr.Dataset, one: xr.Dataset, kind: str) -> Outcome:
@@ -153,6 +159,6 @@ def _outcome(dataset: xr.Dataset, one: xr.Dataset, kind: str) -> Outcome:
     repeats = np.asarray(one[f"repeats_to_criterion{kind}"].values, dtype=float)[~starts_there]
     return Outcome(
         counts_of(repeats, limit_of(dataset, str(one["protocol"].values))),
-        float(np.isfinite(repeats).mean()) if len(repeats) else 0.0,
+        float(np.isfinite(repeats).sum() / max(len(verdict), 1)),
         shares(verdict, words),
     )

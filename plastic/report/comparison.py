@@ -14,7 +14,14 @@ import xarray as xr
 from plastic.report.arms import Arm, Outcome, arm_of
 from plastic.report.flags import meanings
 from plastic.report.grid import Grid
-from plastic.report.matrices import KINDS, controls_grid, matrix_grid, pathway_grid, verdict_grid
+from plastic.report.matrices import (
+    KINDS,
+    controls_grid,
+    matrix_grid,
+    pathway_grid,
+    timing_grid,
+    verdict_grid,
+)
 from plastic.report.origin import rules_of, schedules_of, study_of
 from plastic.report.pathways import Pathway, criterion_input, pathways_of
 
@@ -35,7 +42,7 @@ class Comparison:
         Labels, in the order of the study; controls are protocols.
     arms : tuple of Arm
     pathways : tuple of Pathway
-        Every learning input of every complete arm.
+        Every input that is read, in every complete arm.
     illustrative : mapping of str to str
         Rules that are only illustrative on spiking cells, with the reason.
     doses : mapping of str to int
@@ -88,6 +95,7 @@ class Comparison:
                 found.append(matrix_grid(arms, kind, self.illustrative, self.doses))
             if verdicts:
                 found.append(verdict_grid(arms))
+        found.append(timing_grid(self.arms))
         found.append(controls_grid(self.arms, self.pathways, self.input))
         found.append(pathway_grid(self.pathways, self.input))
         return [grid for grid in found if grid.rows]
@@ -121,8 +129,8 @@ def compare(dataset: xr.Dataset) -> Comparison:
 
     Quartiles are over simulated cells; a cell that did not reach the criterion counts as beyond
     the protocol, so a quartile that falls among such cells reads "> 60" (for 60 repeats). Cells
-    that met the criterion before anything was learned are left out of counts and shares reached,
-    and appear among the verdicts.
+    that met the criterion before anything was learned are left out of the counts; shares are of
+    all simulated cells.
 
     Parameters
     ----------
@@ -182,6 +190,7 @@ def _row(comparison: Comparison, arm: Arm) -> dict[str, object]:
         row[f"never_{_key(cause)}"] = arm.never_causes.get(cause, 0.0) if done else ""
     row["share_extrapolated"] = arm.extrapolated if done else ""
     row["partner_fired"] = arm.partner_fired if done else ""
+    row["realised_lag_ms"] = arm.lag if done else ""
     return row
 
 

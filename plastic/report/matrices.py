@@ -6,7 +6,7 @@ import math
 import string
 from collections.abc import Mapping, Sequence
 
-from plastic.report.arms import Arm
+from plastic.report.arms import ALREADY, Arm
 from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE, Grid
 from plastic.report.pathways import Pathway
 
@@ -56,6 +56,8 @@ def matrix_grid(
         f"median (quartiles) and share of {arms[0].cells} simulated cells that reach it, "
         f"{MEANS[kind]}"
     ]
+    if any(arm.expressed and ALREADY in arm.expressed.verdicts for arm in arms):
+        notes.append(f"cells {ALREADY} are left out of the counts, not of the shares")
     notes += [f"[{letter}] {cause}" for cause, letter in letters.items()]
     notes += extrapolation_notes(arms, doses)
     notes += [f"{ILLUSTRATIVE} {r}: illustrative here: {illustrative[r]}" for r in rules
@@ -86,6 +88,23 @@ def verdict_grid(arms: Sequence[Arm]) -> Grid:
     return Grid(f"{arms[0].protocol}: what became of the cells", columns, rows, [note])
 
 
+def timing_grid(arms: Sequence[Arm]) -> Grid:
+    """Return the lag that the cells' own spikes gave each protocol, over its rules and routes."""
+    rows = []
+    for protocol in _ordered(arm.protocol for arm in arms if arm.expressed):
+        mine = [arm for arm in arms if arm.protocol == protocol and arm.expressed]
+        lags = sorted(arm.lag for arm in mine if math.isfinite(arm.lag))
+        told = f"{lags[0]:+.1f} to {lags[-1]:+.1f}" if lags else "-"
+        fired = sum(arm.partner_fired for arm in mine) / len(mine)
+        rows.append([protocol, told, percent(fired)])
+    note = (
+        "realised lag: t_post - t_pre, first presynaptic spike of a repeat to the nearest spike of "
+        "the soma; median over simulated cells, range over rules and routes"
+    )
+    columns = ["protocol", "realised lag (ms)", "repeats with a spike of the cell"]
+    return Grid("The pairing as it happened", columns, rows, [note])
+
+
 def controls_grid(arms: Sequence[Arm], pathways: Sequence[Pathway], name: str) -> Grid:
     """Return the controls beside their protocols, on the routes they were run on.
 
@@ -98,13 +117,11 @@ def controls_grid(arms: Sequence[Arm], pathways: Sequence[Pathway], name: str) -
     of = {(p.rule, p.route, p.protocol): p for p in pathways if p.input == name}
     routes = {(arm.rule, arm.route) for arm in arms if arm.control and arm.key in of}
     rows = [
-        [arm.rule, arm.route, arm.protocol, epsp_text(of[arm.key]), percent(of[arm.key].reached),
-         percent(arm.partner_fired)]
+        [arm.rule, arm.route, arm.protocol, epsp_text(of[arm.key]), percent(of[arm.key].reached)]
         for arm in sorted(arms, key=lambda a: list(_ordered(x.rule for x in arms)).index(a.rule))
         if (arm.rule, arm.route) in routes and arm.key in of
     ]  # fmt: skip
-    columns = ["rule", "route", "protocol", f"EPSP of {name}, % of baseline", "reached",
-               "repeats with a spike"]  # fmt: skip
+    columns = ["rule", "route", "protocol", f"EPSP of {name}, % of baseline", "reached"]
     note = "EPSP at the last reading, median (quartiles) over simulated cells"
     return Grid("Controls", columns, rows, [note])
 
@@ -138,16 +155,16 @@ def _entry(arm: Arm, kind: str, letters: Mapping[str, str]) -> str:
     outcome = arm.outcome(kind)
     if outcome is None:
         return arm.status
+    head, verdicts = arm.headline(kind), outcome.verdicts
     sign = f" {EXTRAPOLATED}" if arm.extrapolated > 0 else ""
-    told = [f"{outcome.repeats}{sign}", f"{percent(outcome.reached)} reached"]
-    head = arm.headline(kind)
-    if head in outcome.verdicts and not head.startswith("reached"):
-        told = [f"{head} {percent(outcome.verdicts[head])}", f"{percent(outcome.reached)} reached"]
-    never = outcome.verdicts.get("never", 0.0)
-    if never and head != "never":
-        told.append(f"never {percent(never)}")
-    letter = letters.get(arm.cause, "")
-    return ", ".join(told) + (f" [{letter}]" if letter and never else "")
+    letter = f" [{letters[arm.cause]}]" if arm.cause in letters else ""
+    shares = {word: f"{word} {percent(share)}" for word, share in verdicts.items()}
+    shares |= {"never": shares["never"] + letter} if "never" in shares else {}
+    counted = head not in shares or head.startswith("reached")
+    told = [f"{outcome.repeats}{sign}" if counted else shares[head]]
+    told.append(f"{percent(outcome.reached)} reached")
+    told += [shares[word] for word in ("never", ALREADY) if word in shares and word != head]
+    return ", ".join(told)
 
 
 def _told(shares: Mapping[str, float]) -> str:

@@ -13,19 +13,20 @@ import xarray as xr
 from plastic.protocols import Schedule
 from plastic.report.arms import Arm
 
-PAIRED, TESTED_ONLY, UNTOLD = "paired", "control pathway", "not told"
+PAIRED, TESTED_ONLY, FIXED, UNTOLD = "paired", "control pathway", "does not learn", "not told"
 
 
 @dataclass(frozen=True)
 class Pathway:
-    """One learning input in one arm, at the last reading.
+    """One input in one arm, at the last reading.
 
     Attributes
     ----------
     rule, route, protocol, control, input : str
     role : str
-        "paired" when the induction drives the input, "control pathway" when only test pulses do,
-        "not told" when the study cannot be rebuilt here.
+        "paired" when the input learns and the induction drives it, "control pathway" when it
+        learns and only test pulses drive it, "does not learn"; "not told" when the study cannot
+        be rebuilt here.
     percent, low, high : float, % of baseline
         Median and quartiles of the EPSP over simulated cells.
     fires_alone : float
@@ -50,7 +51,7 @@ class Pathway:
 def pathways_of(
     dataset: xr.Dataset, arms: Sequence[Arm], schedules: Mapping[str, Schedule]
 ) -> tuple[Pathway, ...]:
-    """Return every learning input of every complete arm.
+    """Return every input that is read, in every complete arm.
 
     Parameters
     ----------
@@ -60,6 +61,7 @@ def pathways_of(
     schedules : mapping of protocol to Schedule
         Says which inputs the induction drives; may lack some or all.
     """
+    learns = {name.strip() for name in str(dataset.attrs["learns"]).split(",")}
     found = []
     for arm in arms:
         if arm.expressed is None:
@@ -69,7 +71,7 @@ def pathways_of(
             percent = last_values(one["epsp_percent_of_baseline"].sel(input=name))
             median, low, high = spread(percent)
             firing, _, _ = spread(last_values(one["fires_alone"].sel(input=name)))
-            role = _role(name, schedules.get(arm.protocol))
+            role = _role(name, schedules.get(arm.protocol)) if name in learns else FIXED
             found.append(
                 Pathway(
                     *arm.key, arm.control, name, role, median, low, high, firing,
@@ -102,10 +104,8 @@ def spread(values: np.ndarray[Any, np.dtype[np.float64]]) -> tuple[float, float,
 
 
 def criterion_input(dataset: xr.Dataset) -> str:
-    """Return the learning input that the criterion names; the first one when it names none."""
-    names = [str(name) for name in dataset["input"].values]
-    words = str(dataset.attrs.get("criterion", "")).replace("'", " ").replace('"', " ").split()
-    return next((name for name in names if name in words), names[0])
+    """Return the input that the criterion is about."""
+    return str(dataset.attrs["criterion_input"])
 
 
 def _role(name: str, schedule: Schedule | None) -> str:

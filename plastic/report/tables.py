@@ -31,7 +31,7 @@ def printed(grids: Iterable[Grid], console: Console | None = None) -> None:
                 console.print(Text(note, style="dim"))
             console.print()
         else:
-            console.print(Text(f"{grid.plain()}\n"), soft_wrap=True, highlight=False)
+            console.file.write(f"{grid.plain()}\n\n")
 
 
 def rich_table(grid: Grid) -> Table:

@@ -129,30 +129,32 @@ def reach(
     highest_factor : array, shape (cell,)
         The largest factor that the rule's own bounds allow.
     """
-    best = _best(reader, name, route, np.full(len(highest_factor), FARTHEST), inhibition)
-    within = _best(reader, name, route, highest_factor, inhibition)
+    far = np.full(len(highest_factor), FARTHEST)
+
+    def best_of(kind: Mixture, cells: Cells, highest: Floats, inhibition: bool) -> Floats:
+        return _best(reader, cells, name, kind, highest, inhibition)
+
+    best = best_of(route, reader.cells, far, inhibition)
+    within = best_of(route, reader.cells, highest_factor, inhibition)
     can = within >= goal
     cause = np.zeros(len(can), dtype=np.int64)
     cause[~can & (best >= goal)] = RULE_BOUND
     stuck = ~can & (best < goal)
     if not stuck.any():
         return can, cause
-    far = np.full(len(can), FARTHEST)
     single: list[tuple[int, Floats]] = []
     for channel in route.channels:
         target = route.channels[channel].target
         lifted, cells = _lifted(reader.cells, route, [channel])
-        free = Reader(reader.scene, reader.wiring, cells)
-        single.append((_LIMIT_OF[target], _best(free, name, lifted, far, inhibition)))
+        single.append((_LIMIT_OF[target], best_of(lifted, cells, far, inhibition)))
     if inhibition and reader.openings(name).fixed.any():
-        single.append((INHIBITION, _best(reader, name, route, far, False)))
+        single.append((INHIBITION, best_of(route, reader.cells, far, False)))
     for code, chance in reversed(single):
         cause[stuck & (chance >= goal)] = code
     left = stuck & (cause == 0)
     if left.any():
         lifted, cells = _lifted(reader.cells, route, list(route.channels))
-        free = Reader(reader.scene, reader.wiring, cells)
-        together = _best(free, name, lifted, far, False) >= goal
+        together = best_of(lifted, cells, far, False) >= goal
         cause[left & together] = SEVERAL
         cause[left & ~together] = _intrinsic(route)
     return can, cause
@@ -182,13 +184,13 @@ def _lifted(cells: Cells, route: Mixture, names: list[str]) -> tuple[Mixture, Ce
 
 
 def _best(
-    reader: Reader, name: str, route: Mixture, highest: Floats, inhibition: bool
+    reader: Reader, cells: Cells, name: str, route: Mixture, highest: Floats, inhibition: bool
 ) -> Floats:
     """Return the best probability over factors from 1 to `highest`, per cell."""
     top = np.maximum(highest, 1.0)[:, None]
     factor = top ** np.linspace(0.0, 1.0, SEARCHED)[None, :]
     shape = (*factor.shape, len(route.shares), len(reader.scene.learners))
     factors = np.broadcast_to(factor[:, :, None, None], shape).copy()
-    state = state_of(reader.scene, reader.wiring, reader.cells, route, factors)
+    state = state_of(reader.scene, reader.wiring, cells, route, factors)
     chance = reader.fires_alone(name, route, state, inhibition=inhibition)
     return np.asarray(chance.max(axis=1), dtype=float)

@@ -25,7 +25,8 @@ def test_the_final_change_is_the_closed_form_of_two_pairs(files, capsys):
 def test_every_event_is_written_with_the_factor_just_after_it(files, tmp_path, capsys):
     out = tmp_path / "out.csv"
     assert main(["impose", "pair_timing", *files, "--out", str(out)]) == 0
-    rows = list(csv.reader(out.open(newline="")))
+    with out.open(newline="") as file:
+        rows = list(csv.reader(file))
     assert rows[0][:3] == ["time (ms)", "spike of", "factor"]
     assert [row[:2] for row in rows[1:]] == [
         ["0", "pre"], ["10", "post"], ["10000", "pre"], ["10010", "post"], ["10010", "end"],

@@ -21,7 +21,9 @@ MEMBERS = [
     (room, name) for room in ROOMS for name in importlib.import_module(f"plastic.{room}").names()
 ]
 every_room = pytest.mark.parametrize("room", ROOMS)
-every_member = pytest.mark.parametrize(("room", "name"), MEMBERS, ids=[f"{r}.{n}" for r, n in MEMBERS])
+every_member = pytest.mark.parametrize(
+    ("room", "name"), MEMBERS, ids=[f"{r}.{n}" for r, n in MEMBERS]
+)
 
 RULE = '''"""A rule that arrived as one file."""
 
@@ -115,8 +117,12 @@ def test_one_new_file_is_enough(tmp_path: Path) -> None:
     (copy / "rules" / "late_pairs.py").write_text(RULE)
     (copy / "routes" / "late_quantum.py").write_text(ROUTE)
     done = subprocess.run(
-        [sys.executable, "-W", "error", "-c", USE], cwd=tmp_path, capture_output=True, text=True,
-        env={**os.environ, "PYTHONPATH": str(tmp_path)}, check=False,
+        [sys.executable, "-W", "error", "-c", USE],
+        cwd=tmp_path,
+        capture_output=True,
+        text=True,
+        env={**os.environ, "PYTHONPATH": str(tmp_path)},
+        check=False,
     )
     assert done.returncode == 0, done.stderr
     listed, routes, plain, compiled, multiples, where = done.stdout.splitlines()

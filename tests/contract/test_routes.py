@@ -74,7 +74,9 @@ def test_every_parameter_has_a_unit_a_source_and_a_default_within_bounds(
 
 
 @every_route
-@pytest.mark.parametrize("wrong", [{"delay": -1}, {"tau": -1}, {"highest": 0.5}, {"lowest": 1.5}], ids=str)
+@pytest.mark.parametrize(
+    "wrong", [{"delay": -1}, {"tau": -1}, {"highest": 0.5}, {"lowest": 1.5}], ids=str
+)
 def test_a_limit_on_the_wrong_side_of_one_is_refused(
     route: type[Route], wrong: dict[str, float]
 ) -> None:
@@ -164,13 +166,15 @@ def test_a_pure_route_has_one_share_of_one(route: type[Route]) -> None:
 def test_a_mixture_whose_shares_do_not_sum_to_one_is_refused(
     route: type[Route], share: float
 ) -> None:
-    with pytest.raises(Misfit, match="a sum of 1|shares >= 0"):
+    with pytest.raises(Misfit, match=r"a sum of 1|shares >= 0"):
         routes.Mixture("m", {"it": share}, {"it": route()})
 
 
 def test_a_mixture_needs_a_share_for_every_channel() -> None:
     channels = {"one": ROUTES[0](), "two": ROUTES[1]()}
-    with pytest.raises(Misfit, match=r"shares of \['one'\] but expected shares of \['one', 'two'\]"):
+    with pytest.raises(
+        Misfit, match=r"shares of \['one'\] but expected shares of \['one', 'two'\]"
+    ):
         routes.Mixture("m", {"one": 1.0}, channels)
     with pytest.raises(Misfit, match="shares >= 0"):
         routes.Mixture("m", {}, {})

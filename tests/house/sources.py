@@ -25,7 +25,8 @@ def imported(name: str, tree: ast.AST, known: Mapping[str, object]) -> Iterator[
     """Yield line and dotted name of every module of the package that `name` imports.
 
     ``from plastic.engine import layout`` is an import of ``plastic.engine.layout`` when that is a
-    module, of ``plastic.engine`` when it is not. The packages above a module are not listed.
+    module, of ``plastic.engine`` when it is not. The packages above a module are not listed, and
+    a package's own ``__version__`` is no import of it.
     """
     for node in ast.walk(tree):
         if isinstance(node, ast.Import):
@@ -36,11 +37,14 @@ def imported(name: str, tree: ast.AST, known: Mapping[str, object]) -> Iterator[
                 package = name if is_package(name, known) else name.rpartition(".")[0]
                 above = package.split(".")[: len(package.split(".")) - node.level + 1]
                 base = ".".join([*above, *filter(None, [node.module])])
-            inner = [f"{base}.{alias.name}" for alias in node.names]
+            names = [alias.name for alias in node.names if not alias.name.startswith("__")]
+            inner = [f"{base}.{name}" for name in names]
             targets = [one if one in known else base for one in inner]
         else:
             continue
-        yield from ((node.lineno, t) for t in dict.fromkeys(targets) if t.split(".")[0] == "plastic")
+        yield from (
+            (node.lineno, t) for t in dict.fromkeys(targets) if t.split(".")[0] == "plastic"
+        )
 
 
 def is_package(name: str, known: Mapping[str, object]) -> bool:

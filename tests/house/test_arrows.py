@@ -116,8 +116,14 @@ def test_imports_point_down_only() -> None:
 )
 def test_an_arrow_that_points_up_or_sideways_is_seen(name: str, text: str) -> None:
     house = parsed(
-        plastic="", plastic__rules="", plastic__routes="", plastic__engine="", plastic__study="",
-        plastic__membrane="", plastic__report="", plastic__cli="",
+        plastic="",
+        plastic__rules="",
+        plastic__routes="",
+        plastic__engine="",
+        plastic__study="",
+        plastic__membrane="",
+        plastic__report="",
+        plastic__cli="",
     )
     assert len(wrong_arrows({**house, **parsed(**{name: text})})) == 1
 
@@ -129,11 +135,15 @@ def test_an_arrow_that_points_up_or_sideways_is_seen(name: str, text: str) -> No
         ("plastic__measures__peak", "from plastic.membrane import release\nimport plastic.errors"),
         ("plastic__cli__run", "from plastic.study.file import load_study\nimport plastic"),
         ("plastic__units", "from plastic.errors import PlasticError"),
+        ("plastic__study__store", "from plastic import __version__"),
         ("plastic__engine__loop", "from . import layout\nimport numpy"),
     ],
 )
 def test_an_arrow_that_points_down_is_allowed(name: str, text: str) -> None:
-    assert wrong_arrows(parsed(**{name: text, "plastic__engine": "", "plastic__engine__layout": ""})) == []
+    assert (
+        wrong_arrows(parsed(**{name: text, "plastic__engine": "", "plastic__engine__layout": ""}))
+        == []
+    )
 
 
 def test_no_module_imports_itself_by_way_of_others() -> None:
@@ -142,8 +152,10 @@ def test_no_module_imports_itself_by_way_of_others() -> None:
 
 def test_a_cycle_is_seen() -> None:
     house = parsed(
-        plastic__a="from plastic.b import x", plastic__b="import plastic.c",
-        plastic__c="from plastic import a", plastic__d="import plastic.a",
+        plastic__a="from plastic.b import x",
+        plastic__b="import plastic.c",
+        plastic__c="from plastic import a",
+        plastic__d="import plastic.a",
     )
     assert cycles(house) == ["plastic.a", "plastic.b", "plastic.c"]
 
@@ -173,7 +185,11 @@ def test_opening_the_door_and_listing_loads_nothing_slow() -> None:
         "print('numba' in sys.modules, 'xarray' in sys.modules)"
     )
     done = subprocess.run(
-        [sys.executable, "-c", code], capture_output=True, text=True, cwd=ROOT, check=False,
+        [sys.executable, "-c", code],
+        capture_output=True,
+        text=True,
+        cwd=ROOT,
+        check=False,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
     )
     assert done.returncode == 0, done.stderr
@@ -190,7 +206,11 @@ def test_listing_imports_no_member() -> None:
         "    print(*[n for n in names if f'plastic.{room}.{n}' in sys.modules])"
     )
     done = subprocess.run(
-        [sys.executable, "-c", code], capture_output=True, text=True, cwd=ROOT, check=False,
+        [sys.executable, "-c", code],
+        capture_output=True,
+        text=True,
+        cwd=ROOT,
+        check=False,
         env={**os.environ, "PYTHONPATH": str(ROOT)},
     )
     assert done.returncode == 0, done.stderr

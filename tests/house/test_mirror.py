@@ -103,7 +103,9 @@ def toothless(trees: dict[str, ast.Module]) -> list[str]:
 
 def parsed_tests() -> dict[str, ast.Module]:
     """Return every file of the tests, parsed."""
-    return {str(p.relative_to(TESTS)): ast.parse(p.read_text()) for p in sorted(TESTS.rglob("*.py"))}
+    return {
+        str(p.relative_to(TESTS)): ast.parse(p.read_text()) for p in sorted(TESTS.rglob("*.py"))
+    }
 
 
 def test_every_file_of_the_package_has_its_test() -> None:
@@ -163,7 +165,9 @@ def test_the_top_level_holds_what_it_should_and_nothing_else() -> None:
         pytest.skip("not a working copy: git does not know the files here")
     listed = subprocess.run(
         ["git", "-C", str(ROOT), "ls-files", "--cached", "--others", "--exclude-standard"],
-        capture_output=True, text=True, check=True,
+        capture_output=True,
+        text=True,
+        check=True,
     ).stdout.splitlines()
     tops = {line.split("/")[0] for line in listed}
     assert {top for top in tops if not top.startswith(".")} <= TOP_LEVEL

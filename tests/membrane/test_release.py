@@ -165,9 +165,11 @@ def test_the_tail_at_its_edges() -> None:
     assert tail(1.0, [0, 5, 5], [0.5, 0, 0.5], [0.3, 0.3, 0], 0.3).tolist() == [0, 0, 0]
 
 
-def test_three_tenths_reach_three_tenths() -> None:
+def test_three_quanta_of_seven_tenths_reach_two_point_one() -> None:
+    """In binary 3 * 0.7 is just below 2.1, and 3 * 0.1 just above 0.3."""
+    assert 3 * 0.7 < 2.1
+    assert tail(2.1, 3, 1.0, 0.7, 0) == 1
     assert tail(0.3, 3, 1.0, 0.1, 0) == 1
-    assert tail(0.7, 7, 1.0, 0.1, 0) == 1
     assert tail(0.3 + 1e-9, 3, 1.0, 0.1, 0) == 0
 
 

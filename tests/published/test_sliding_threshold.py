@@ -18,7 +18,9 @@ SELECTIVE = np.diag(1 / CHANCE)
 FAST = SlidingThreshold.from_set("patterns", eta=0.04, tau_theta=2.5)
 
 
-def field(rule: SlidingThreshold, weights: np.ndarray, theta: float, *mix: np.ndarray) -> np.ndarray:
+def field(
+    rule: SlidingThreshold, weights: np.ndarray, theta: float, *mix: np.ndarray
+) -> np.ndarray:
     """Return the averaged change of (weights, theta) per presentation, from the rule's hooks."""
     patterns, chance = mix or (PATTERNS, CHANCE)
     total = np.zeros(len(weights) + 1)
@@ -161,8 +163,14 @@ def test_patterns_in_random_order_reach_the_same_answer() -> None:
     seeds, is 0.6 %. Control: the first presentations are not there yet."""
     rule = SlidingThreshold.from_set("patterns", eta=0.004, tau_theta=25)
     found = present(
-        rule, PATTERNS, probabilities=CHANCE, presentations=30_000, start=(0.3, 0.2, 0.1),
-        order="random", seed=4, every=10,
+        rule,
+        PATTERNS,
+        probabilities=CHANCE,
+        presentations=30_000,
+        start=(0.3, 0.2, 0.1),
+        order="random",
+        seed=4,
+        every=10,
     )
     answer = found.response.values[-2400:].mean(axis=0)
     end = SELECTIVE[answer.argmax()]

@@ -17,18 +17,53 @@ FULL = TripletTiming.from_set("visual_full")
 
 #: derived and checked: loop and closed form agreed to 7e-16. Order of points: that of `SJOSTROM`
 MINIMAL_COLUMN = [
-    0.00000000, 0.11864130, 0.22779517, 0.53211193, 0.76273057,
-    -0.31662036, -0.33221317, -0.34173458, 0.17371479, 0.74917658,
+    0.00000000,
+    0.11864130,
+    0.22779517,
+    0.53211193,
+    0.76273057,
+    -0.31662036,
+    -0.33221317,
+    -0.34173458,
+    0.17371479,
+    0.74917658,
 ]
 FULL_COLUMN = [
-    0.00000, 0.13205, 0.24696, 0.53372, 0.74091, -0.31216, -0.33362, -0.35162, 0.15479, 0.72725,
+    0.00000,
+    0.13205,
+    0.24696,
+    0.53372,
+    0.74091,
+    -0.31216,
+    -0.33362,
+    -0.35162,
+    0.15479,
+    0.72725,
 ]
 #: derived and checked; order of points: that of `WANG`
 HIPPOCAMPAL_FULL = [
-    0.20182, -0.10375, 0.04261, 0.00523, -0.07816, 0.10230, 0.35757, 0.20376, 0.10801, 0.32467,
+    0.20182,
+    -0.10375,
+    0.04261,
+    0.00523,
+    -0.07816,
+    0.10230,
+    0.35757,
+    0.20376,
+    0.10801,
+    0.32467,
 ]
 HIPPOCAMPAL_MINIMAL = [
-    0.17536, -0.15608, 0.05510, 0.01927, -0.05083, 0.10158, 0.33269, 0.17982, 0.06839, 0.31777,
+    0.17536,
+    -0.15608,
+    0.05510,
+    0.01927,
+    -0.05083,
+    0.10158,
+    0.33269,
+    0.17982,
+    0.06839,
+    0.31777,
 ]
 POINTS = [f"{p.lag:+g} ms, {p.rate:g} Hz" for p in SJOSTROM]
 
@@ -56,7 +91,9 @@ def closed(rule: TripletTiming, lag: float, rate: float, n: int = 60) -> float:
     return up * (rule.a2_plus * single + rule.a3_plus * y / (1 - y) * triple) - rule.a2_minus * down
 
 
-@pytest.mark.parametrize(("point", "printed"), list(zip(SJOSTROM, MINIMAL_COLUMN, strict=True)), ids=POINTS)
+@pytest.mark.parametrize(
+    ("point", "printed"), list(zip(SJOSTROM, MINIMAL_COLUMN, strict=True)), ids=POINTS
+)
 def test_the_minimal_model_gives_the_printed_change(point: Point, printed: float) -> None:
     """Parameters from memory (high, corroborated); values derived and checked; eight digits."""
     assert change(MINIMAL, *pairs(point.lag, point.rate)) == pytest.approx(printed, abs=5.1e-9)
@@ -67,10 +104,14 @@ def test_the_minimal_model_gives_the_printed_change(point: Point, printed: float
 @pytest.mark.parametrize("rate", [0.1, 10.0, 20.0, 40.0, 50.0])
 def test_continuous_pairs_follow_the_closed_form(name: str, lag: float, rate: float) -> None:
     rule = TripletTiming.from_set(name)
-    assert change(rule, *pairs(lag, rate)) == pytest.approx(closed(rule, lag, rate), rel=1e-10, abs=1e-13)
+    assert change(rule, *pairs(lag, rate)) == pytest.approx(
+        closed(rule, lag, rate), rel=1e-10, abs=1e-13
+    )
 
 
-@pytest.mark.parametrize(("point", "printed"), list(zip(SJOSTROM, FULL_COLUMN, strict=True)), ids=POINTS)
+@pytest.mark.parametrize(
+    ("point", "printed"), list(zip(SJOSTROM, FULL_COLUMN, strict=True)), ids=POINTS
+)
 def test_the_full_model_gives_the_printed_change(point: Point, printed: float) -> None:
     """Parameters from memory (high, corroborated); values derived and checked; five digits."""
     assert change(FULL, *pairs(point.lag, point.rate)) == pytest.approx(printed, abs=5.1e-6)
@@ -96,9 +137,12 @@ def test_the_pair_rule_cannot_fit_the_rate_dependence_at_any_amplitude() -> None
     It is linear in its amplitudes, so least squares finds the best of all.
     """
     unit = 1e-6
-    basis = np.array(
-        [column(PairTiming(a_plus=unit, a_minus=0)), column(PairTiming(a_plus=0, a_minus=unit))]
-    ).T / unit
+    basis = (
+        np.array(
+            [column(PairTiming(a_plus=unit, a_minus=0)), column(PairTiming(a_plus=0, a_minus=unit))]
+        ).T
+        / unit
+    )
     mean, sem = (np.array([getattr(p, name) for p in SJOSTROM]) for name in ("mean", "sem"))
     best, *_ = np.linalg.lstsq(basis / sem[:, None], mean / sem, rcond=None)
     error = misfit(basis @ best)
@@ -119,7 +163,12 @@ def test_the_sign_of_the_change_depends_on_rate_as_measured() -> None:
 def test_the_bursts_of_the_slice_experiment_are_not_the_schedule_of_the_fit() -> None:
     """15 bursts of 5 pairs every 10 s (from memory, mid to high) give +0.045 and -0.296 at 40 Hz,
     +0.031 and -0.162 at 50 Hz (derived and checked): the slow trace never builds up."""
-    printed = {(10.0, 40.0): 0.045, (-10.0, 40.0): -0.296, (10.0, 50.0): 0.031, (-10.0, 50.0): -0.162}
+    printed = {
+        (10.0, 40.0): 0.045,
+        (-10.0, 40.0): -0.296,
+        (10.0, 50.0): 0.031,
+        (-10.0, 50.0): -0.162,
+    }
     for (lag, rate), value in printed.items():
         pre, post = pairs(lag, rate, 5)
         starts = 10_000.0 * np.arange(15)[:, None]
@@ -132,7 +181,8 @@ def test_the_bursts_of_the_slice_experiment_are_not_the_schedule_of_the_fit() ->
     [
         (name, protocol, value)
         for name, values in [
-            ("hippocampal_full", HIPPOCAMPAL_FULL), ("hippocampal_minimal", HIPPOCAMPAL_MINIMAL),
+            ("hippocampal_full", HIPPOCAMPAL_FULL),
+            ("hippocampal_minimal", HIPPOCAMPAL_MINIMAL),
         ]
         for protocol, value in zip(WANG, values, strict=True)
     ],
@@ -150,9 +200,15 @@ def drift(rule: TripletTiming, pre: float, post: float) -> float:
     tau_plus, tau_minus, tau_x, tau_y = (
         t / 1000 for t in (rule.tau_plus, rule.tau_minus, rule.tau_x, rule.tau_y)
     )
-    return pre * post * (
-        rule.a2_plus * tau_plus - rule.a2_minus * tau_minus
-        + rule.a3_plus * tau_plus * tau_y * post - rule.a3_minus * tau_minus * tau_x * pre
+    return (
+        pre
+        * post
+        * (
+            rule.a2_plus * tau_plus
+            - rule.a2_minus * tau_minus
+            + rule.a3_plus * tau_plus * tau_y * post
+            - rule.a3_minus * tau_minus * tau_x * pre
+        )
     )
 
 

@@ -140,7 +140,8 @@ def _verdicts(kind, fires, repeats, expressed, top, cause, base, needed):
 
 
 UNITS = {"epsp_peak": "mV", "epsp_rise": "ms", "epsp_half_width": "ms",
-         "epsp_percent_of_baseline": "%", "minutes_to_criterion": "min"}  # fmt: skip
+         "epsp_percent_of_baseline": "%", "minutes_to_criterion": "min",
+         "realised_lag": "ms"}  # fmt: skip
 PER_CELL = {"repeats_to_criterion", "repeats_to_criterion_induced", "minutes_to_criterion",
             "verdict", "verdict_induced", "never_cause", "extrapolated"}  # fmt: skip
 
@@ -166,6 +167,7 @@ def fake_dataset() -> xr.Dataset:
             start = np.int8(-1 if "ver" in name else 0) if whole else np.float32(np.nan)
             full.setdefault(name, np.full(shape + values.shape, start))[at] = values
     full["partner_fired"] = np.where(status[..., None] == 0, 0.97 + 0.0 * cell, np.nan)
+    full["realised_lag"] = np.where(status[..., None] == 0, 10.0 + 0.1 * cell, np.nan)
     return _labelled(full, status, time, repeats)
 
 
@@ -188,13 +190,13 @@ def _labelled(full, status, time, repeats) -> xr.Dataset:
         "rule": RULES, "route": ROUTES, "protocol": PROTOCOLS, "cell": np.arange(CELLS),
         "input": ["far", "side"], "reading": np.arange(len(time)),
         "epoch": ["baseline", "induction", "follow_up"],
-        "control": ("protocol", ["", *CONTROLS, "", *CONTROLS]),
-        "repeats": (("protocol", "reading"), np.tile(repeats, (n, 1)),
+                "repeats": (("protocol", "reading"), np.tile(repeats, (n, 1)),
                     {"units": "1", "long_name": "repeats completed"}),
         "time": (("protocol", "reading"), np.tile(time, (n, 1)), every),
         "epoch_start": (("protocol", "epoch"), np.tile([-10.0, 0.0, 10.0], (n, 1)), every),
         "epoch_end": (("protocol", "epoch"), np.tile([0.0, 10.0, 40.0], (n, 1)), every),
     }  # fmt: skip
+    data["control"] = ("protocol", ["", *CONTROLS, "", *CONTROLS])
     threshold = -55 + 0.8 * np.sin(3.1 * np.arange(CELLS))
     data["threshold"] = ("cell", threshold, {"units": "mV", "long_name": "spike threshold"})
     attrs = {
@@ -202,6 +204,7 @@ def _labelled(full, status, time, repeats) -> xr.Dataset:
         "seed": 1, "plastic_version": "0", "versions": "{}", "dt": 0.1, "solver": "formulas",
         "criterion": "far alone fires the cell with probability >= 0.5", "at_ceiling": "stop",
         "match": "same_factor", "learns": "far, side", "rest": -68.0,
+        "criterion_input": "far", "alone_fires": 0.5,
     }  # fmt: skip
     return xr.Dataset(data, coords=coords, attrs=attrs)
 

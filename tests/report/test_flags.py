@@ -24,4 +24,4 @@ def test_a_missing_flag_is_no_word():
 def test_shares_sum_to_one_and_are_told_commonest_first():
     found = shares(np.array([1, 1, 0, -1, 1]), {0: "reached", 1: "not within"})
     assert found == {"not within": 0.6, "not run": 0.2, "reached": 0.2}
-    assert list(found)[0] == "not within"
+    assert next(iter(found)) == "not within"

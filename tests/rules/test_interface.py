@@ -67,10 +67,12 @@ def test_the_plain_declaration_of_these_tests_is_accepted() -> None:
 def test_variables_are_found_by_kind_and_know_their_names() -> None:
     assert {n: w.name for n, w in Counter.weights.items()} == {"v": "v", "u": "u"}
     assert Counter.states == {
-        "seen": State(0.0, "input", "seen"), "level": State("begin", "cell", "level"),
+        "seen": State(0.0, "input", "seen"),
+        "level": State("begin", "cell", "level"),
     }
     assert Counter.traces == {
-        "x": Trace("pre", "tau", "set", "x"), "y": Trace("post", 30.0, "add", "y"),
+        "x": Trace("pre", "tau", "set", "x"),
+        "y": Trace("post", 30.0, "add", "y"),
     }
 
 
@@ -167,8 +169,14 @@ OF_PRE = {"r1": trace("pre", tau=20.0)}
         ({"cell_on_post": wants_r1, **OF_PRE}, "cell_on_post: nothing is called 'r1' there"),
     ],
     ids=[
-        "undeclared", "dt at an event", "amplitude before a spike of the cell", "trace in flow",
-        "cell in flow", "weight in cell flow", "weight at the cell", "pre trace at the cell",
+        "undeclared",
+        "dt at an event",
+        "amplitude before a spike of the cell",
+        "trace in flow",
+        "cell in flow",
+        "weight in cell flow",
+        "weight at the cell",
+        "pre trace at the cell",
     ],
 )
 def test_an_argument_that_nobody_provides_is_refused(body: dict[str, object], said: str) -> None:
@@ -188,7 +196,9 @@ def test_an_argument_that_nobody_provides_is_refused(body: dict[str, object], sa
     ids=["low", "high", "start", "tau", "start of a state"],
 )
 def test_a_number_that_names_no_parameter_is_refused(body: dict[str, object]) -> None:
-    with pytest.raises(RuleError, match="Wrong: '(w|tau|theta)_[a-z0]+' is no parameter of the rule"):
+    with pytest.raises(
+        RuleError, match=r"Wrong: '(w|tau|theta)_[a-z0]+' is no parameter of the rule"
+    ):
         declared(**body)
 
 

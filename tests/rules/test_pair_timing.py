@@ -53,7 +53,10 @@ def test_each_input_learns_from_its_own_spikes() -> None:
 def test_a_weight_stops_at_its_bounds_and_comes_back() -> None:
     strong = PairTiming(a_plus=1, a_minus=1, w_max=1.5)
     pairs = impose(
-        strong, [0.0, 1000.0, 2012.0], [1.0, 1001.0, 2011.0], readings=[500, 1500, 2500],
+        strong,
+        [0.0, 1000.0, 2012.0],
+        [1.0, 1001.0, 2011.0],
+        readings=[500, 1500, 2500],
         compiled=False,
     )
     assert pairs.w[0, :2].values.tolist() == [1.5, 1.5]

@@ -63,7 +63,9 @@ def test_sixty_bursts_about_double_the_weight_as_the_docstring_says() -> None:
 
 def test_the_threshold_survives_a_silent_baseline() -> None:
     late = [BASELINE + t for t in BURST]
-    w, theta = on_spikes(SlidingThreshold(), [BASELINE], late, readings=[0, BASELINE, BASELINE + 200])
+    w, theta = on_spikes(
+        SlidingThreshold(), [BASELINE], late, readings=[0, BASELINE, BASELINE + 200]
+    )
     assert theta[1] == 10.0
     early, _ = on_spikes(SlidingThreshold(), [0.0], BURST)
     assert w[-1] == pytest.approx(early[-1], rel=1e-9)

@@ -11,8 +11,14 @@ from plastic.rules.pair_timing import PairTiming
 from plastic.rules.triplet_timing import TripletTiming
 
 RULE = TripletTiming(
-    a2_plus=0.01, a3_plus=0.02, a2_minus=0.03, a3_minus=0.04,
-    tau_plus=15, tau_minus=30, tau_x=90, tau_y=120,
+    a2_plus=0.01,
+    a3_plus=0.02,
+    a2_minus=0.03,
+    a3_minus=0.04,
+    tau_plus=15,
+    tau_minus=30,
+    tau_x=90,
+    tau_y=120,
 )
 
 

@@ -2,7 +2,6 @@
 
 from __future__ import annotations
 
-import re
 from collections.abc import Collection, Mapping, Sequence
 
 import numpy as np
@@ -92,8 +91,7 @@ def level(dataset: xr.Dataset, variable: str) -> tuple[float, str]:
     if variable == "epsp_peak":
         above = np.asarray(dataset["threshold"].values, dtype=float) - float(dataset.attrs["rest"])
         return float(np.median(above)), "spike threshold above rest, median cell"
-    found = re.findall(r"\d*\.?\d+", str(dataset.attrs.get("criterion", "")))
-    return (float(found[-1]) if found else 0.5), "criterion"
+    return float(dataset.attrs["alone_fires"]), "criterion"
 
 
 def is_complete(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> bool:

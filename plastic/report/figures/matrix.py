@@ -9,7 +9,7 @@ from matplotlib.colors import to_hex
 from matplotlib.figure import Figure
 from matplotlib.patches import Rectangle
 
-from plastic.report.arms import Arm
+from plastic.report.arms import ALREADY, Arm
 from plastic.report.comparison import Comparison
 from plastic.report.figures.picture import Picture, Row, Rows, labels, where
 from plastic.report.figures.style import (
@@ -44,6 +44,8 @@ def matrix(comparison: Comparison, protocol: str) -> Picture:
     notes = [f"{letter}: {cause}" for cause, letter in letters.items()]
     if any(arm.extrapolated > 0 for arm in arms):
         notes.append(f"{EXTRAPOLATED} beyond the dose at which the rule was measured")
+    if any(float(row["share_already_expressed"]) > 0 for row in rows):
+        notes.append("already: alone fired the cell at baseline; left out of the counts")
     notes += [
         f"{ILLUSTRATIVE} {words(rule)} is illustrative here: {comparison.illustrative[rule]}"
         for rule in comparison.rules
@@ -77,6 +79,7 @@ def _row(comparison: Comparison, arm: Arm, letters: dict[str, str]) -> Row:
         row[f"upper_quartile_{kind}"] = counts.high if counts else math.nan
         row[f"share_reached_{kind}"] = outcome.reached if outcome else math.nan
         row[f"share_never_{kind}"] = outcome.verdicts.get("never", 0.0) if outcome else math.nan
+        row[f"share_already_{kind}"] = outcome.verdicts.get(ALREADY, 0.0) if outcome else math.nan
         row[f"shown_{kind}"] = arm.headline(kind)
     row["repeats_of_protocol"] = arm.expressed.repeats.limit if arm.expressed else math.nan
     return row
@@ -158,6 +161,9 @@ def _lines(row: Row, room: float, wide: bool) -> list[str]:
     found.append(f"{percent(share)} reached")
     if shown != "never" and float(row["share_never_expressed"]) > 0:
         found.append(never)
+    already = float(row["share_already_expressed"])
+    if already > 0 and shown != ALREADY:
+        found.append(f"already {percent(already)}")
     if wide and row["shown_induced"] != shown:
         found.append(f"induced: {row['shown_induced']}")
     first, *rest = found

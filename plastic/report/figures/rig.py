@@ -86,11 +86,20 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
             if y:
                 axes.axhline(y - 0.5, color="0.85", linewidth=0.5)
         axes.tick_params(axis="y", length=0)
+        _spread_out(axes)
         axes.locator_params(axis="x", nbins=4)
     sheet.panels[0].set_yticks(range(len(routes)), places)
     sheet.panels[0].set_ylim(len(routes) - 0.5, -0.5)
     plan.legend(sheet, width)
     return sheet.figure
+
+
+def _spread_out(axes: Axes) -> None:
+    """Widen an axis on which nothing differs, lest rounding errors look like findings."""
+    low, high = axes.get_xlim()
+    middle, least = (low + high) / 2, max(0.01, 0.02 * abs(low + high) / 2)
+    if high - low < least:
+        axes.set_xlim(middle - least / 2, middle + least / 2)
 
 
 def _dumbbell(axes: Axes, row: Row, y: float, k: int, label: str) -> None:

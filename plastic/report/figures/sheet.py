@@ -24,7 +24,7 @@ from plastic.report.figures.style import (
 )
 
 #: mm
-TICKS_X, TICKS_Y, NAME, EDGE, RIGHT = 4.0, 7.5, 3.8, 1.2, 3.0
+TICKS_X, TICKS_Y, NAME, EDGE, RIGHT = 4.0, 7.5, 3.8, 1.2, 4.0
 
 
 @dataclass(frozen=True)
@@ -77,7 +77,9 @@ class Plan:
         """Return the sheet with one panel for each title, `width` mm wide."""
         columns = min(len(titles), self.narrow if width < 120 else self.wide)
         gap = 3.2 if self.same_y else self.left + 2.0
-        left = EDGE + (NAME if self.y else 0) + self.left
+        rows = math.ceil(len(titles) / columns)
+        named = wrapped(self.y, rows * self.height + (rows - 1) * TICKS_X + 4.0)
+        left = EDGE + height_of(named) * 1.2 + self.left
         wide = (width - left - RIGHT - gap * (columns - 1)) / columns
         shown = [wrapped(title, wide) for title in titles]
         over = [
@@ -101,7 +103,7 @@ class Plan:
             )
             panels.append(axes)
         middle = ((left + width - RIGHT) / 2, under + TICKS_X + (body - TICKS_X - over[0]) / 2)
-        self._written(figure, told, middle)
+        self._written(figure, told, named, middle)
         return Sheet(figure, panels)
 
     def _panel(self, figure: Figure, box: Sequence[float], first: Sequence[Axes]) -> Axes:
@@ -112,14 +114,15 @@ class Plan:
             sharey=first[0] if first and self.same_y else None,
         )
 
-    def _written(self, figure: Figure, told: str, middle: tuple[float, float]) -> None:
+    def _written(self, figure: Figure, told: str, named: str, middle: tuple[float, float]) -> None:
         """Write the heading and the names of the axes; `middle` of the panels in mm."""
         width, height = size_of(figure)
         figure.text(0.5, 1 - EDGE / height, told, ha="center", va="top", fontsize=7)
         place = self._legend_height(width) + EDGE
         figure.text(middle[0] / width, place / height, self.x, ha="center", va="bottom")
         figure.text(
-            EDGE / width, middle[1] / height, self.y, ha="left", va="center", rotation=90
+            EDGE / width, middle[1] / height, named,
+            ha="left", va="center", ma="center", rotation=90,
         )  # fmt: skip
 
     def legend(self, sheet: Sheet, width: float) -> None:

@@ -37,6 +37,8 @@ _RC: dict[Any, Any] = {
     "legend.frameon": False,
     "legend.handlelength": 3.2,
     "axes.linewidth": 0.6,
+    "axes.formatter.useoffset": False,
+    "axes.formatter.limits": (-4, 6),
     "axes.spines.top": False,
     "axes.spines.right": False,
     "axes.titlepad": 3,

@@ -15,6 +15,7 @@ def texts_of(figure):
     for axes in figure.axes:
         found += [axes.title, axes.xaxis.label, axes.yaxis.label, *axes.texts]
         for axis in (axes.xaxis, axes.yaxis):
+            found.append(axis.get_offset_text())
             low, high = sorted(axis.get_view_interval())
             for tick in axis.get_major_ticks():
                 if low <= tick.get_loc() <= high:

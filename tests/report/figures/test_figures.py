@@ -85,7 +85,7 @@ def test_the_matrix_shows_the_counts_of_its_csv(pictures, figures):
 def test_lines_are_told_apart_without_colour(figures, name):
     for axes in figures[name, 85].axes:
         found = looking.looks(axes)
-        assert len(set(found)) == len(set(line.get_label() for line in named(axes)))
+        assert len(set(found)) == len({line.get_label() for line in named(axes)})
 
 
 def named(axes):
@@ -205,6 +205,32 @@ def empty(width):
     from plastic.report.figures.style import canvas
 
     return canvas(width, 20)
+
+
+@pytest.mark.parametrize("width", WIDTHS)
+def test_one_rule_and_one_route_make_readable_figures_too(bursts, width):
+    one = bursts.isel(rule=[1], route=[0])
+    found = pictures_of(one)
+    assert len(found) == len(KINDS)
+    for picture in found:
+        figure = picture.figure(width)
+        assert looking.outside(figure) == [], picture.name
+        assert looking.overlapping(figure) == [], picture.name
+
+
+@pytest.mark.parametrize("width", WIDTHS)
+def test_what_does_not_differ_is_not_blown_up(bursts, width):
+    flat = bursts.copy(deep=True)
+    flat["failure_rate"][:] = 0.0
+    flat["failure_rate"][..., -1] = 3e-9
+    flat["paired_pulse_ratio"][:] = 1.0
+    picture = next(p for p in pictures_of(flat) if p.name.startswith("before_after"))
+    figure = picture.figure(width)
+    assert looking.outside(figure) == []
+    assert looking.overlapping(figure) == []
+    for axes in figure.axes:
+        if axes.get_title() in ("failure rate", "paired-pulse ratio"):
+            assert np.diff(axes.get_xlim())[0] >= 0.0099
 
 
 def test_the_checks_of_this_file_can_fail(pictures, tmp_path):
