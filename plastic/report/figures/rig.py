@@ -87,7 +87,7 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
                 axes.axhline(y - 0.5, color="0.85", linewidth=0.5)
         axes.tick_params(axis="y", length=0)
         _spread_out(axes)
-        axes.locator_params(axis="x", nbins=4)
+        axes.locator_params(axis="x", nbins=3 if width < 120 else 4)
     sheet.panels[0].set_yticks(range(len(routes)), places)
     sheet.panels[0].set_ylim(len(routes) - 0.5, -0.5)
     plan.legend(sheet, width)
@@ -97,9 +97,12 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
 def _spread_out(axes: Axes) -> None:
     """Widen an axis on which nothing differs, lest rounding errors look like findings."""
     low, high = axes.get_xlim()
-    middle, least = (low + high) / 2, max(0.01, 0.02 * abs(low + high) / 2)
+    middle, least = (low + high) / 2, max(0.02, 0.02 * abs(low + high) / 2)
     if high - low < least:
-        axes.set_xlim(middle - least / 2, middle + least / 2)
+        start = middle - least / 2
+        if axes.dataLim.x0 >= 0:  # a rate or a size has no negative side
+            start = max(start, -0.05 * least)
+        axes.set_xlim(start, start + least)
 
 
 def _dumbbell(axes: Axes, row: Row, y: float, k: int, label: str) -> None:

@@ -230,7 +230,7 @@ def test_what_does_not_differ_is_not_blown_up(bursts, width):
     assert looking.overlapping(figure) == []
     for axes in figure.axes:
         if axes.get_title() in ("failure rate", "paired-pulse ratio"):
-            assert np.diff(axes.get_xlim())[0] >= 0.0099
+            assert np.diff(axes.get_xlim())[0] >= 0.0199
 
 
 def test_the_checks_of_this_file_can_fail(pictures, tmp_path):
