@@ -23,15 +23,15 @@ def run(args: argparse.Namespace) -> int:
     file = args.folder / "results.nc" if args.folder.is_dir() else args.folder
     dataset = plastic.load(file)
     comparison = plastic.compare(dataset)
-    print(comparison.head)
-    print()
-    printed(comparison.grids())
-    for note in comparison.notes:
-        print(note)
     if args.csv is not None:
         comparison.to_csv(args.csv)
     if args.figures is not None:
         from plastic.report.figures import write_figures
 
         write_figures(dataset, args.figures)
+    print(comparison.head)
+    print()
+    printed(comparison.grids())
+    for note in comparison.notes:
+        print(note)
     return 0

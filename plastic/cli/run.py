@@ -55,6 +55,7 @@ def run(args: argparse.Namespace) -> int:
             from plastic.report.figures import write_figures
 
             write_figures(dataset, out / "figures", progress=bar.task("drawing"))
+    print(f"{comparison.head}\n")
     printed([*_protocols(study), *comparison.grids(verdicts=False)])
     _tell(out, figures=not args.no_figures, notes=comparison.notes)
     return 0

@@ -102,8 +102,12 @@ class Comparison:
 
     @property
     def head(self) -> str:
-        """Title, criterion and number of simulated cells, in a few lines."""
-        told = f"criterion: {self.criterion}; {self.cells} simulated cells per arm"
+        """Title, criterion, number of simulated cells, matching and ceiling, in a few lines."""
+        ceiling = _CEILINGS.get(self.at_ceiling, self.at_ceiling)
+        told = (
+            f"criterion: {self.criterion}; {self.cells} simulated cells per arm\n"
+            f"routes matched by {self.match.replace('_', ' ')}; at a route's ceiling {ceiling}"
+        )
         return f"{self.title}\n{told}" if self.title else told
 
     def __str__(self) -> str:
@@ -167,6 +171,7 @@ _LOST = (
     "The study cannot be rebuilt here (a file it names is missing, or it was written for another "
     "version): pathways are not told apart, and rules that are only illustrative are not marked."
 )
+_CEILINGS = {"stop": "the weight is held", "hidden": "the weight goes on, unseen"}
 _TEXTS = ("title", "criterion", "match", "at_ceiling")
 
 

@@ -28,7 +28,7 @@ class SlidingThreshold(Rule):
     presynaptic spike with three postsynaptic ones in a window, 60 times, about doubles the weight.
     """
 
-    eta: float = parameter(1.2e-6, "1", low=0, high=1, source=OURS + "; see above")
+    eta: float = parameter(2.7e-6, "1", low=0, high=1, source=OURS + "; see above")
     tau_theta: float = parameter(60_000.0, "ms", low=1e-3, high=1e9, source=OURS)
     y_0: float = parameter(10.0, "Hz", low=1e-9, high=1e6, source=OURS)
     theta_rest: float = parameter(10.0, "Hz", low=0, high=1e4, source=OURS)

@@ -32,14 +32,15 @@ CAUSES = (
     "feed_forward_inhibition",
     "release_certain_and_still_too_small",
     "beyond_the_best_diameter",
-    "distance_no_conductance_there_fires_the_cell",
+    "no_conductance_at_this_distance_fires_the_cell",
     "rule_at_its_own_bound",
     "several_limits_together",
+    "without_a_neck_and_still_too_small",
 )
 _LIMIT_OF = {
     "probability": 1, "quantum": 2, "sites": 3, "neck": 4, "added_sites": 5, "diameter": 6,
 }
-INHIBITION, CERTAIN, BEST_DIAMETER, DISTANCE, RULE_BOUND, SEVERAL = range(7, 13)
+INHIBITION, CERTAIN, BEST_DIAMETER, DISTANCE, RULE_BOUND, SEVERAL, NO_NECK = range(7, 14)
 
 #: below this share of repeats with a spike of the cell, the pairing did not happen
 PARTNER_SHARE = 0.5
@@ -167,7 +168,7 @@ def _intrinsic(route: Mixture) -> int:
         return CERTAIN
     if targets <= {"diameter", "probability", "neck"} and "diameter" in targets:
         return BEST_DIAMETER
-    return DISTANCE
+    return NO_NECK if targets == {"neck"} else DISTANCE
 
 
 def _lifted(cells: Cells, route: Mixture, names: list[str]) -> tuple[Mixture, Cells]:

@@ -100,16 +100,3 @@ def test_a_study_that_cannot_be_used_is_one_line(study, asked, capsys):
 def test_a_study_that_is_not_there_is_one_line(tmp_path, capsys):
     assert main(["run", str(tmp_path / "none.toml")]) == 2
     assert "there is no such file" in capsys.readouterr().err
-
-
-def test_compare_prints_every_table_and_writes_what_is_asked_for(tmp_path, monkeypatch, capsys):
-    opened = []
-    monkeypatch.setattr(
-        plastic, "load", lambda path: opened.append(path) or fake_dataset(), raising=False
-    )
-    assert main(["compare", str(tmp_path), "--csv", str(tmp_path / "arms.csv")]) == 0
-    text = capsys.readouterr().out
-    assert opened == [tmp_path / "results.nc"]
-    assert text.startswith("An invented pair of pathways\ncriterion: far alone fires the cell")
-    assert "bursts: what became of the cells" in text
-    assert (tmp_path / "arms.csv").read_text().startswith("rule,route,protocol,")

@@ -212,3 +212,10 @@ def _labelled(full, status, time, repeats) -> xr.Dataset:
 @pytest.fixture(scope="session")
 def fake_results() -> xr.Dataset:
     return fake_dataset()
+
+
+def changed(dataset: xr.Dataset, name: str, values: np.ndarray) -> xr.Dataset:
+    """Return a copy in which one variable of one arm is set: first rule, second route, bursts."""
+    copy = dataset.copy(deep=True)
+    copy[name].loc[{"rule": RULES[0], "route": ROUTES[1], "protocol": "bursts"}] = values
+    return copy

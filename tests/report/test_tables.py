@@ -1,7 +1,5 @@
-import csv
 import io
 
-import pytest
 from rich.console import Console
 from rich.text import Text
 
@@ -45,17 +43,3 @@ def test_on_a_narrow_terminal_nothing_is_lost():
     assert text.count("x") == 60
     assert text.count("y") == 60
     assert max(len(Text.from_ansi(line)) for line in text.splitlines()) <= 40
-
-
-def test_csv_is_the_same_table():
-    rows = list(csv.reader(io.StringIO(GRID.csv())))
-    assert rows == [["route", "pair_timing"], ["quantal_size", "49 (40 to 58) [a]"]]
-
-
-def test_columns_without_names_have_no_head():
-    assert Grid("", ["", ""], [["a", "b"]]).plain() == "a  b"
-
-
-def test_a_row_that_does_not_fit_is_refused():
-    with pytest.raises(ValueError, match="3 entries for 2 columns"):
-        Grid("t", ["a", "b"], [["1", "2", "3"]])

@@ -42,7 +42,7 @@ def before_after(
             if is_complete(dataset, rule, route, protocol):
                 rows += [_row(dataset, rule, route, protocol, name, key) for key in MEASURES]
     told = (
-        f"{words(protocol)}, {words(name)}: end of baseline (open) and last reading (filled); "
+        f"{words(protocol)}, {words(name)}: end of baseline (open, dotted) and last reading (filled); "
         f"median and quartiles of {dataset.sizes['cell']} simulated cells"
     )
 
@@ -111,7 +111,7 @@ def _dumbbell(axes: Axes, row: Row, y: float, k: int, label: str) -> None:
         low, median, high = (
             float(row[f"{when}_{part}"]) for part in ("lower_quartile", "median", "upper_quartile")
         )
-        axes.plot([low, high], [y, y], color=look.color, linewidth=0.8)
+        axes.plot([low, high], [y, y], "-" if filled else ":", color=look.color, linewidth=0.8)
         axes.plot(
             [median], [y], color=look.color, marker=look.marker, linestyle="",
             markersize=3.4, markerfacecolor=look.color if filled else "white",
