@@ -8,7 +8,7 @@ from __future__ import annotations
 import importlib
 from typing import Any
 
-__version__ = "0.1.0"
+from plastic.version import VERSION as __version__
 
 _DOORS = {
     "Rule": "plastic.rules._interface",

@@ -56,8 +56,12 @@ class Arm:
         Share of simulated cells whose count lies beyond the dose at which the rule was measured.
     partner_fired : float
         Mean share of repeats in which the cell fired.
+    late : float
+        Share of all simulated cells that reach it, expressed, only after the last repeat.
     lag : float, ms
         Median over simulated cells of the mean realised lag.
+    late : float
+        Share of all simulated cells that reach it, expressed, only after the last repeat.
     """
 
     rule: str
@@ -72,6 +76,7 @@ class Arm:
     extrapolated: float = 0.0
     partner_fired: float = float("nan")
     lag: float = float("nan")
+    late: float = 0.0
 
     @property
     def key(self) -> tuple[str, str, str]:
@@ -85,16 +90,22 @@ class Arm:
     def headline(self, kind: str = "expressed") -> str:
         """Return the one word or number that stands for the arm.
 
-        The median count when half of the cells get there; otherwise "> 60" (for a protocol of 60
-        repeats), or the verdict that is commonest among the cells that did not.
+        The median count when half of the cells get there (those that fire at baseline left out).
+        Otherwise what the middle cell did, in the order reached, not within, never: "> 60" (for a
+        protocol of 60 repeats), the commonest other verdict, or "never".
         """
         outcome = self.outcome(kind)
         if outcome is None:
             return self.status
         if np.isfinite(outcome.repeats.median):
             return outcome.repeats.shown(outcome.repeats.median)
-        failed = [v for v in outcome.verdicts if not v.startswith("reached")]
-        word = failed[0] if failed else "not within"
+        known = {v: s for v, s in outcome.verdicts.items() if v != ALREADY}
+        if not known:
+            return ALREADY
+        between = {v: s for v, s in known.items() if not v.startswith("reached") and v != "never"}
+        if not between or known.get("never", 0.0) > sum(known.values()) / 2:
+            return "never"
+        word = max(between, key=lambda v: between[v])
         return f"> {outcome.repeats.limit}" if word == "not within" else word
 
     @property
@@ -136,7 +147,15 @@ def arm_of(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> Arm:
         extrapolated=float(np.mean(integers(one["extrapolated"]) == 1)),
         partner_fired=float(np.mean(_known(one["partner_fired"]))),
         lag=float(np.median(_known(one["realised_lag"]))),
+        late=_late(one),
     )
+
+
+def _late(one: xr.Dataset) -> float:
+    """Return the share of cells that reach the criterion only in the follow-up."""
+    minutes = np.asarray(one["minutes_to_criterion"].values, dtype=float)
+    end = float(one["epoch_end"].sel(epoch="induction").values)
+    return float(np.mean(np.nan_to_num(minutes, nan=-np.inf) > end + 1e-6))
 
 
 def limit_of(dataset: xr.Dataset, protocol: str) -> int:

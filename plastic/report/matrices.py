@@ -162,7 +162,10 @@ def _entry(arm: Arm, kind: str, letters: Mapping[str, str]) -> str:
     shares |= {"never": shares["never"] + letter} if "never" in shares else {}
     counted = head not in shares or head.startswith("reached")
     told = [f"{outcome.repeats}{sign}" if counted else shares[head]]
-    told.append(f"{percent(outcome.reached)} reached")
+    late = (
+        f" ({percent(arm.late)} only in the follow-up)" if kind == "expressed" and arm.late else ""
+    )
+    told.append(f"{percent(outcome.reached)} reached{late}")
     told += [shares[word] for word in ("never", ALREADY) if word in shares and word != head]
     return ", ".join(told)
 

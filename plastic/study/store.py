@@ -25,7 +25,6 @@ import numpy as np
 import xarray as xr
 from numpy.typing import NDArray
 
-import plastic
 from plastic.errors import StoreError
 from plastic.protocols import Schedule
 from plastic.study.block import Arrays, read_inputs
@@ -33,6 +32,7 @@ from plastic.study.grid import Arm, Grid, reading_times
 from plastic.study.model import Study
 from plastic.study.population import Population
 from plastic.study.schema import ARM, COMPLETE, NOT_APPLICABLE, NOT_RUN, STATUSES, VARIABLES, Variable
+from plastic.version import VERSION
 
 RESULTS, MARK, BLOCKS = "results.nc", "run.json", "blocks"
 LIBRARIES = ("numpy", "scipy", "numba", "xarray", "h5netcdf", "h5py")
@@ -42,7 +42,7 @@ def study_hash(study: Study) -> str:
     """Return a hash of everything that decides a study's results; comments do not count."""
     parts: list[bytes] = [
         json.dumps(tomllib.loads(study.text), sort_keys=True, default=str).encode(),
-        f"{study.seed} {study.cells} {plastic.__version__}".encode(),
+        f"{study.seed} {study.cells} {VERSION}".encode(),
     ]
     for name, schedule in study.schedules().items():
         parts += [name.encode(), schedule.injected.tobytes()]
@@ -298,11 +298,13 @@ def _attributes(file: Any, study: Study, population: Population) -> None:
     file.attrs.update(
         {
             "Conventions": "CF-1.11",
+            "coordinates": "control time repeats epoch_start epoch_end input_of distance added "
+            "stretch_from stretch_to",
             "title": study.title,
             "study": study.text,
             "study_hash": study_hash(study),
             "seed": study.seed,
-            "plastic_version": plastic.__version__,
+            "plastic_version": VERSION,
             "versions": _versions(),
             "dt": study.dt,
             "solver": "exact propagator of the passive membrane, conductances by symmetric (second "

@@ -15,7 +15,7 @@ from tests.house.sources import ROOT, imported, inside_functions, modules
 
 #: floors of the house, lowest first; a module may import from its own room and from lower floors
 FLOORS = (
-    ("errors", "units", "parameters", "catalogue", "draws", "quantities"),
+    ("version", "errors", "units", "parameters", "catalogue", "draws", "quantities"),
     ("membrane", "rules", "routes", "protocols"),
     ("engine",),
     ("study", "measures", "recordings"),

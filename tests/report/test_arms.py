@@ -82,9 +82,9 @@ def test_what_is_not_finite_is_no_lag(fake_results):
 @pytest.mark.parametrize(
     ("verdicts", "word"),
     [([2] * 12, "> 60"), ([4] * 8 + [2] * 4, "depressed"), ([5] * 12, "partner failed"),
-     ([0] * 4 + [6] * 5 + [2] * 3, "never")],
+     ([0] * 4 + [6] * 5 + [2] * 3, "> 60"), ([0] * 2 + [6] * 7 + [2] * 3, "never")],
 )  # fmt: skip
-def test_the_headline_is_the_commonest_reason_among_cells_that_failed(verdicts, word, fake_results):
+def test_the_headline_is_what_the_middle_cell_did(verdicts, word, fake_results):
     flags = np.array(verdicts, dtype=np.int8)
     data = changed(fake_results, "verdict", flags)
     data = changed(data, "repeats_to_criterion", np.where(flags == 0, 20.0, np.nan))

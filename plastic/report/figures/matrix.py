@@ -69,7 +69,7 @@ def _row(comparison: Comparison, arm: Arm, letters: dict[str, str]) -> Row:
         "shown": arm.headline(),
         "illustrative": ILLUSTRATIVE if arm.rule in comparison.illustrative else "",
         "cause": arm.cause, "letter": letters.get(arm.cause, ""),
-        "extrapolated_share": arm.extrapolated,
+        "extrapolated_share": arm.extrapolated, "share_late_expressed": arm.late,
     }  # fmt: skip
     outcomes = {"expressed": arm.expressed, "induced": arm.induced}
     for kind, outcome in outcomes.items():
@@ -158,7 +158,8 @@ def _lines(row: Row, room: float, wide: bool) -> list[str]:
     found = [f"{shown}{sign}"] if _is_count(shown) else [never] if shown == "never" else [shown]
     if _is_count(shown) and math.isfinite(low):
         found.append(f"{_count(low, row)} to {_count(high, row)}")
-    found.append(f"{percent(share)} reached")
+    late = float(row["share_late_expressed"])
+    found.append(f"{percent(share)} reached" + (f" ({percent(late)} later)" if late > 0 else ""))
     if shown != "never" and float(row["share_never_expressed"]) > 0:
         found.append(never)
     already = float(row["share_already_expressed"])

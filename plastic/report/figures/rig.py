@@ -42,8 +42,8 @@ def before_after(
             if is_complete(dataset, rule, route, protocol):
                 rows += [_row(dataset, rule, route, protocol, name, key) for key in MEASURES]
     told = (
-        f"{words(protocol)}, {words(name)}: end of baseline (open, dotted) and last reading (filled); "
-        f"median and quartiles of {dataset.sizes['cell']} simulated cells"
+        f"{words(protocol)}, {words(name)}: end of baseline (open, dotted) and last reading "
+        f"(filled); median and quartiles of {dataset.sizes['cell']} simulated cells"
     )
 
     names = rule_names(labels(rows, "rule"), illustrative)
