@@ -67,10 +67,16 @@ def example(dimension: str) -> str:
 
 
 def _spaced(text: str) -> str:
-    """Turn the way the trade writes units ("kohm cm^2") into products ("kohm*cm^2")."""
-    match = re.fullmatch(r"\s*([-+]?[\d.]+(?:[eE][-+]?\d+)?)\s*(.*?)\s*", text)
-    if match is None:
-        return text
+    """Turn the way the trade writes units ("kohm cm^2") into products ("kohm*cm^2").
+
+    Raises
+    ------
+    ValueError
+        When the text does not start with one number ("1,5 ms", "ms").
+    """
+    match = re.fullmatch(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?|[-+]?nan|[-+]?inf)\s*(.*?)\s*", text)
+    if match is None or re.match(r"[\d,.+-]", match[2]):
+        raise ValueError("it starts with no number")
     unit = re.sub(r"(?<=[\w)\d])\s+(?=[A-Za-zµΩ])", "*", match[2]).replace("µ", "u").replace("Ω", "ohm")
     unit = unit.replace("Ohm", "ohm")
     return f"{match[1]} {unit}" if unit else match[1]
