@@ -8,7 +8,9 @@ from __future__ import annotations
 import importlib
 from typing import Any
 
-from plastic.version import VERSION as __version__
+from plastic.version import VERSION
+
+__version__ = VERSION
 
 _DOORS = {
     "Rule": "plastic.rules._interface",
@@ -24,7 +26,7 @@ _DOORS = {
 }
 _ROOMS = ("rules", "routes", "protocols", "measures")
 
-__all__ = [*_DOORS, *_ROOMS]  # noqa: PLE0604
+__all__ = ["__version__", *_DOORS, *_ROOMS]
 
 
 def __getattr__(name: str) -> Any:

@@ -70,6 +70,6 @@ def named(seed: int, cells: int, name: str) -> NDArray[np.float64]:
 
 
 def lognormal(mean: float, cv: float, scores: NDArray[np.float64]) -> NDArray[np.float64]:
-    """Return log-normal values of the given mean and coefficient of variation from normal scores."""
+    """Return log-normal values of a mean and a coefficient of variation from normal scores."""
     spread = math.sqrt(math.log1p(cv * cv))
     return np.asarray(mean * np.exp(spread * scores - spread * spread / 2), dtype=float)

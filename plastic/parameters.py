@@ -131,7 +131,7 @@ class Parametrised:
         return {name: getattr(self, name) for name in self.parameters}
 
     def __eq__(self, other: object) -> bool:
-        return type(other) is type(self) and self.values == other.values  # type: ignore[attr-defined]
+        return type(other) is type(self) and self.values == other.values
 
     def __hash__(self) -> int:
         return hash((type(self), tuple(self.values.items())))

@@ -9,6 +9,7 @@ from __future__ import annotations
 import functools
 import math
 import re
+from typing import Any
 
 import pint
 
@@ -74,10 +75,16 @@ def _spaced(text: str) -> str:
     ValueError
         When the text does not start with one number ("1,5 ms", "ms").
     """
-    match = re.fullmatch(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?|[-+]?nan|[-+]?inf)\s*(.*?)\s*", text)
+    match = re.fullmatch(
+        r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?|[-+]?nan|[-+]?inf)\s*(.*?)\s*", text
+    )
     if match is None or re.match(r"[\d,.+-]", match[2]):
         raise ValueError("it starts with no number")
-    unit = re.sub(r"(?<=[\w)\d])\s+(?=[A-Za-zµΩ])", "*", match[2]).replace("µ", "u").replace("Ω", "ohm")
+    unit = (
+        re.sub(r"(?<=[\w)\d])\s+(?=[A-Za-zµΩ])", "*", match[2])
+        .replace("µ", "u")
+        .replace("Ω", "ohm")
+    )
     unit = unit.replace("Ohm", "ohm")
     return f"{match[1]} {unit}" if unit else match[1]
 
@@ -120,13 +127,11 @@ def number_in(text: object, dimension: str) -> float:
 def _parsed(text: str, dimension: str, wanted: str) -> float:
     hint = f"(write it like {example(dimension)!r})"
     try:
-        quantity = _registry().Quantity(_spaced(text))
+        quantity: Any = _registry().Quantity(_spaced(text))
     except Exception:  # pint raises many kinds, all meaning the same to a user
         raise QuantityError(text, dimension, f"no quantity that can be read {hint}") from None
     try:
         return float(quantity.to(wanted).magnitude)
     except pint.DimensionalityError:
         found = f"{quantity.units:~}" or "no unit"
-        raise QuantityError(
-            text, dimension, f"in {found}, not a {dimension} {hint}"
-        ) from None
+        raise QuantityError(text, dimension, f"in {found}, not a {dimension} {hint}") from None

@@ -12,8 +12,8 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
-from plastic.engine.kernel import Numbers
 from plastic.engine import layout
+from plastic.engine.kernel import Numbers
 from plastic.engine.layout import Cells, Floats, Ints, Log, Records, Wiring, table
 from plastic.errors import Misfit
 from plastic.membrane.receptors import norm
@@ -111,7 +111,7 @@ def input_times(
         if name not in scene.inputs:
             raise Misfit("protocol", got=f"events of {name!r}", expected=f"{scene.inputs}")
         steps = np.unique(np.rint(np.concatenate(parts) / scene.dt).astype(np.int64))
-        merged[name] = steps * scene.dt if name not in blocked else np.empty(0)
+        merged[name] = np.asarray(steps * scene.dt if name not in blocked else [], dtype=float)
     return merged
 
 
@@ -151,7 +151,10 @@ def events_of(
     is_input = (contact_of >= 0) | (learner >= 0)  # injected spikes come first within a step
     order = np.lexsort((learner, contact_of, is_input, step))
     return table(
-        layout.EVENT, step=step[order], contact=contact_of[order], learner=learner[order],
+        layout.EVENT,
+        step=step[order],
+        contact=contact_of[order],
+        learner=learner[order],
         ordinal=ordinal[order],
     )
 
@@ -189,33 +192,50 @@ def wire(
     distance = tree.node_distance[sites]
     contacts = scene.contacts
     beyond = np.array(
-        [[int(k.node in tree.beyond(s) and not k.added) for k in contacts]
-         for s in range(len(tree.stretch_parent))],
+        [
+            [int(k.node in tree.beyond(s) and not k.added) for k in contacts]
+            for s in range(len(tree.stretch_parent))
+        ],
         dtype=np.int64,
     ).reshape(len(tree.stretch_parent), len(contacts))
     excites = np.array([int(k.input not in scene.inhibitory) for k in contacts])
     slot_node = list(dict.fromkeys(node for node, _ in groups))
     plan = table(
         layout.PLAN,
-        seed=scene.seed, n_steps=round(end / dt), n_nodes=tree.n_nodes,
-        refractory=round(scene.refractory / dt), tick=_tick(route, dt, immediate),
-        window=round(numbers.window / dt), deterministic=int(scene.deterministic),
-        clocked=int(scene.clocked), dt=dt, rm=scene.rm, ri=scene.ri, tau_m=scene.tau_m,
-        reset=scene.reset - scene.rest, bap_length=spread.length_constant,
-        bap_loss=spread.train_loss, bap_recovery=max(spread.recovery, 1e-9), bap_floor=spread.floor,
+        seed=scene.seed,
+        n_steps=round(end / dt),
+        n_nodes=tree.n_nodes,
+        refractory=round(scene.refractory / dt),
+        tick=_tick(route, dt, immediate),
+        window=round(numbers.window / dt),
+        deterministic=int(scene.deterministic),
+        clocked=int(scene.clocked),
+        dt=dt,
+        rm=scene.rm,
+        ri=scene.ri,
+        tau_m=scene.tau_m,
+        reset=scene.reset - scene.rest,
+        bap_length=spread.length_constant,
+        bap_loss=spread.train_loss,
+        bap_recovery=max(spread.recovery, 1e-9),
+        bap_floor=spread.floor,
     )
     learning = np.array([int(k.input in learners) for k in contacts], dtype=int)
     return Wiring(
         plan=plan.reshape(1),
         stretches=table(
-            layout.STRETCH, parent=tree.stretch_parent, child=tree.stretch_child,
+            layout.STRETCH,
+            parent=tree.stretch_parent,
+            child=tree.stretch_child,
             widens=(beyond * excites * learning).any(axis=1),
-            length=tree.stretch_length, diameter=tree.stretch_diameter,
+            length=tree.stretch_length,
+            diameter=tree.stretch_diameter,
         ),
         beyond=beyond,
         groups=table(
             layout.GROUP,
-            node=[node for node, _ in groups], slot=[slot_node.index(node) for node, _ in groups],
+            node=[node for node, _ in groups],
+            slot=[slot_node.index(node) for node, _ in groups],
             reversal=[r.reversal - scene.rest for _, r in groups],
             keep_decay=[np.exp(-dt / r.decay) for _, r in groups],
             keep_rise=[np.exp(-dt / r.rise) if r.rise > 0 else 0.0 for _, r in groups],
@@ -226,9 +246,12 @@ def wire(
             layout.CONTACT,
             group=[groups.index((k.node, k.receptor)) for k in contacts],
             learner=[learners.index(k.input) if k.input in learners else -1 for k in contacts],
-            added=[int(k.added) for k in contacts], excites=excites,
-            cv=[k.quantal_cv for k in contacts], recovery=[k.recovery for k in contacts],
-            facilitation=[k.facilitation for k in contacts], neck=[k.neck for k in contacts],
+            added=[int(k.added) for k in contacts],
+            excites=excites,
+            cv=[k.quantal_cv for k in contacts],
+            recovery=[k.recovery for k in contacts],
+            facilitation=[k.facilitation for k in contacts],
+            neck=[k.neck for k in contacts],
         ),
         sites=table(
             layout.SITE, delay=np.rint(np.asarray(spread.delay(distance)) / dt), distance=distance
@@ -238,8 +261,11 @@ def wire(
         events=events,
         reading_step=_ints(np.rint(np.asarray(readings) / dt)),
         channels=_channels(route, immediate),
-        taus_pre=numbers.taus_pre, taus_post=numbers.taus_post, starts=numbers.starts,
-        cell_starts=numbers.cell_starts, low=numbers.low,
+        taus_pre=numbers.taus_pre,
+        taus_post=numbers.taus_post,
+        starts=numbers.starts,
+        cell_starts=numbers.cell_starts,
+        low=numbers.low,
     )
 
 

@@ -61,9 +61,11 @@ def impose(
     >>> float(impose(rule, pre=[0.0], post=[10.0]).factor[0, -1].round(6))
     1.007141
     """
-    trains = {str(k): _times(f"pre[{k!r}]", v) for k, v in pre.items()} if isinstance(pre, Mapping) else {
-        "input": _times("pre", pre)
-    }
+    trains = (
+        {str(k): _times(f"pre[{k!r}]", v) for k, v in pre.items()}
+        if isinstance(pre, Mapping)
+        else {"input": _times("pre", pre)}
+    )
     after = _times("post", post)
     last = max([0.0, *(t[-1] for t in [*trains.values(), after] if len(t))])
     window = float(getattr(rule, "window", 0.0)) if rule.reads == "rates" else 0.0
@@ -90,7 +92,7 @@ def _times(name: str, values: ArrayLike) -> NDArray[np.float64]:
 def _merged(
     trains: Sequence[NDArray[np.float64]], after: NDArray[np.float64], finish: float
 ) -> tuple[NDArray[np.float64], NDArray[np.int64]]:
-    """Return all spike times up to `finish`, sorted, with the learner each belongs to (-1: cell)."""
+    """Return all spike times up to `finish`, sorted, and the learner of each (-1: the cell)."""
     time = np.concatenate([after, *trains])
     who = np.concatenate([np.full(len(t), k - 1) for k, t in enumerate([after, *trains])])
     order = np.argsort(time, kind="stable")
@@ -102,21 +104,41 @@ Filled = tuple[NDArray[np.float64], NDArray[np.float64], NDArray[np.float64]]
 
 
 def _compiled(
-    rule: Rule, inputs: int, time: NDArray[np.float64], who: NDArray[np.int64], at: NDArray[np.float64]
+    rule: Rule,
+    inputs: int,
+    time: NDArray[np.float64],
+    who: NDArray[np.int64],
+    at: NDArray[np.float64],
 ) -> Filled:
     n, rows = numbers_of(rule), Rows.of(type(rule))
     variables = np.zeros((len(at), len(rows.inputs), inputs))
     factors, states = np.zeros((len(at), inputs)), np.zeros((len(at), len(rows.cell)))
     high = np.repeat(n.high[:, None], inputs, axis=1)
     module_for(type(rule)).run_imposed(
-        n.parameters, n.starts, n.cell_starts, n.low, high, n.taus_pre, n.taus_post, n.window,
-        time, who, at, variables, factors, states,
+        n.parameters,
+        n.starts,
+        n.cell_starts,
+        n.low,
+        high,
+        n.taus_pre,
+        n.taus_post,
+        n.window,
+        time,
+        who,
+        at,
+        variables,
+        factors,
+        states,
     )
     return variables, factors, states
 
 
 def _plain(
-    rule: Rule, inputs: int, time: NDArray[np.float64], who: NDArray[np.int64], at: NDArray[np.float64]
+    rule: Rule,
+    inputs: int,
+    time: NDArray[np.float64],
+    who: NDArray[np.int64],
+    at: NDArray[np.float64],
 ) -> Filled:
     rows, learner = Rows.of(type(rule)), Learner(rule, inputs)
     variables = np.zeros((len(at), len(rows.inputs), inputs))
@@ -146,7 +168,9 @@ def _labelled(
     for k, name in enumerate(rows.inputs):
         kind = "weight" if name in rule.weights else "state"
         data[name] = (
-            ("input", "reading"), variables[:, k].T, {"units": "1", "long_name": f"{kind} {name}"}
+            ("input", "reading"),
+            variables[:, k].T,
+            {"units": "1", "long_name": f"{kind} {name}"},
         )
     coords = {
         "input": inputs,

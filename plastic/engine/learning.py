@@ -45,10 +45,10 @@ class Learner:
         sites = max([0, *self.site_of]) + 1
         self.hooks = rule.hooks()
         number = rule.number
+        starts = {name: w.start for name, w in rule.weights.items()}
+        starts |= {name: s.start for name, s in rule.states.items() if s.scope == "input"}
         self.per_input: dict[str, Array] = {
-            name: np.full(inputs, number(v.start))
-            for name, v in [*rule.weights.items(), *rule.states.items()]
-            if name in rule.weights or rule.states[name].scope == "input"
+            name: np.full(inputs, number(start)) for name, start in starts.items()
         }
         self.per_cell = {n: number(s.start) for n, s in rule.states.items() if s.scope == "cell"}
         self.traces: dict[str, Array] = {
@@ -68,7 +68,10 @@ class Learner:
         """Return the factor of every input, dimensionless, 1 at the start."""
         rows = {name: self.per_input[name] for name in self.rule.weights}
         return np.array(
-            [self.rule.factor(**{n: float(v[i]) for n, v in rows.items()}) for i in range(self.inputs)]
+            [
+                self.rule.factor(**{n: float(v[i]) for n, v in rows.items()})
+                for i in range(self.inputs)
+            ]
         )
 
     def advance(self, t: float) -> None:
@@ -167,7 +170,9 @@ class Learner:
         return {name: float(row[i]) for name, row in self.per_input.items()}
 
     def _of_cell(self) -> dict[str, float]:
-        post = {n: float(v[0]) for n, v in self.traces.items() if self.rule.traces[n].source == "post"}
+        post = {
+            n: float(v[0]) for n, v in self.traces.items() if self.rule.traces[n].source == "post"
+        }
         return {**self.per_cell, **post}
 
     def _copy(self) -> list[dict[str, float]]:
@@ -175,9 +180,7 @@ class Learner:
         seen = []
         for i in range(self.inputs):
             place = {"pre": i, "post": self.site_of[i]}
-            local = {
-                n: float(v[place[self.rule.traces[n].source]]) for n, v in self.traces.items()
-            }
+            local = {n: float(v[place[self.rule.traces[n].source]]) for n, v in self.traces.items()}
             seen.append({**self._of_input(i), **self.per_cell, **local})
         return seen
 

@@ -56,7 +56,11 @@ def present(
         A rule that reads spikes; shapes or probabilities that do not fit.
     """
     rates = np.asarray(patterns, dtype=float)
-    chance = np.full(len(rates), 1 / len(rates)) if probabilities is None else np.asarray(probabilities, float)
+    chance = (
+        np.full(len(rates), 1 / len(rates))
+        if probabilities is None
+        else np.asarray(probabilities, float)
+    )
     _check(rule, rates, chance, order)
     learner = Learner(rule, rates.shape[1])
     name = next(iter(rule.weights))
@@ -66,7 +70,9 @@ def present(
     window = float(getattr(rule, "window", 1.0))
     kept = [_snapshot(learner, name, rates)]
     for k in range(presentations):
-        chosen = chance if order == "mean" else np.eye(len(rates))[draw.choice(len(rates), p=chance)]
+        chosen = (
+            chance if order == "mean" else np.eye(len(rates))[draw.choice(len(rates), p=chance)]
+        )
         learner.t += window
         _present_mix(learner, name, rates, chosen)
         if (k + 1) % every == 0:
@@ -76,7 +82,11 @@ def present(
     units = {"weight": "1", "response": "Hz"}
     return xr.Dataset(
         {
-            key: (dims.get(key, ("reading",)), value, {"units": units.get(key, "1"), "long_name": key})
+            key: (
+                dims.get(key, ("reading",)),
+                value,
+                {"units": units.get(key, "1"), "long_name": key},
+            )
             for key, value in rows.items()
         },
         attrs={"rule": repr(rule), "order": order},
@@ -113,10 +123,16 @@ def _snapshot(learner: Learner, name: str, rates: Array) -> dict[str, Array | fl
 def _check(rule: Rule, rates: Array, chance: Array, order: str) -> None:
     who = type(rule).__name__
     if rule.reads != "rates":
-        raise Misfit(f"{who} on patterns", got="a rule that reads spikes", expected="one that reads rates")
+        raise Misfit(
+            f"{who} on patterns", got="a rule that reads spikes", expected="one that reads rates"
+        )
     if rates.ndim != 2 or not np.isfinite(rates).all():
-        raise Misfit("patterns", got=f"an array of shape {rates.shape}", expected="finite (pattern, input)")
+        raise Misfit(
+            "patterns", got=f"an array of shape {rates.shape}", expected="finite (pattern, input)"
+        )
     if chance.shape != (len(rates),) or (chance < 0).any() or abs(chance.sum() - 1) > 1e-9:
-        raise Misfit("probabilities", got=str(chance), expected=f"{len(rates)} numbers >= 0 that sum to 1")
+        raise Misfit(
+            "probabilities", got=str(chance), expected=f"{len(rates)} numbers >= 0 that sum to 1"
+        )
     if order not in ("mean", "random"):
         raise Misfit("order", got=repr(order), expected="'mean' or 'random'")

@@ -38,8 +38,21 @@ def set_geometry(plan, stretches, multiple, load, conductance, leak, powers, wor
 
 @njit(nogil=True)
 def run_probe(
-    groups, slot_node, single, half_over_c, open_step, open_group, amount, threshold, trace,
-    v, scratch, slow, fast, total, drive,
+    groups,
+    slot_node,
+    single,
+    half_over_c,
+    open_step,
+    open_group,
+    amount,
+    threshold,
+    trace,
+    v,
+    scratch,
+    slow,
+    fast,
+    total,
+    drive,
 ):
     """Run one probe into `trace`; return the step at which the soma reaches threshold, or -1.
 
@@ -111,14 +124,18 @@ def shape_of(trace, dt, out):
     out[2] = math.nan
     out[3] = math.nan
     if height > 1e-9:
-        out[2] = dt * (crossing(trace, 0.8 * height, peak, 0) - crossing(trace, 0.2 * height, peak, 0))
+        out[2] = dt * (
+            crossing(trace, 0.8 * height, peak, 0) - crossing(trace, 0.2 * height, peak, 0)
+        )
         down = crossing(trace, 0.5 * height, peak, trace.shape[0] - 1)
         out[3] = dt * (down - crossing(trace, 0.5 * height, peak, 0))
 
 
 @njit(nogil=True)
-def run_shapes(plans, stretches, groups, slot_node, loads, multiples, step, group, amounts, length, out):
-    """Fill out (cell, geometry, probe, 4) with EPSP shapes; amounts (cell, probe, opening) in nS."""
+def run_shapes(
+    plans, stretches, groups, slot_node, loads, multiples, step, group, amounts, length, out
+):
+    """Fill out (cell, geometry, probe, 4) with EPSP shapes; amounts (cell, probe, opening), nS."""
     plan = plans[0]
     size = padded(plan.n_nodes)
     v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
@@ -130,20 +147,55 @@ def run_shapes(plans, stretches, groups, slot_node, loads, multiples, step, grou
     for c in range(loads.shape[0]):
         for m in range(multiples.shape[0]):
             set_geometry(
-                plan, stretches, multiples[m], loads[c], conductance, leak, powers, work, half_over_c
+                plan,
+                stretches,
+                multiples[m],
+                loads[c],
+                conductance,
+                leak,
+                powers,
+                work,
+                half_over_c,
             )
             for k in range(amounts.shape[1]):
                 run_probe(
-                    groups, slot_node, single, half_over_c, step, group, amounts[c, k], math.inf,
-                    trace, v, scratch, slow, fast, total, drive,
+                    groups,
+                    slot_node,
+                    single,
+                    half_over_c,
+                    step,
+                    group,
+                    amounts[c, k],
+                    math.inf,
+                    trace,
+                    v,
+                    scratch,
+                    slow,
+                    fast,
+                    total,
+                    drive,
                 )
                 shape_of(trace, plan.dt, out[c, m, k])
 
 
 @njit(nogil=True)
 def run_thresholds(
-    plans, stretches, groups, slot_node, loads, thresholds, multiples, step, group, amounts, own,
-    added, added_amounts, largest, length, out,
+    plans,
+    stretches,
+    groups,
+    slot_node,
+    loads,
+    thresholds,
+    multiples,
+    step,
+    group,
+    amounts,
+    own,
+    added,
+    added_amounts,
+    largest,
+    length,
+    out,
 ):
     """Fill out (cell, geometry, added) with the own conductance (nS) that just fires the cell.
 
@@ -162,18 +214,43 @@ def run_thresholds(
     for c in range(loads.shape[0]):
         for m in range(multiples.shape[0]):
             set_geometry(
-                plan, stretches, multiples[m], loads[c], conductance, leak, powers, work, half_over_c
+                plan,
+                stretches,
+                multiples[m],
+                loads[c],
+                conductance,
+                leak,
+                powers,
+                work,
+                half_over_c,
             )
             for a in range(added_amounts.shape[0]):
                 low, high = 0.0, largest
                 for turn in range(26):
                     # the two ends first, then bisection of the logarithm
-                    middle = high if turn == 0 else (0.0 if turn == 1 else math.sqrt(max(low, 1e-3) * high))
+                    middle = (
+                        high
+                        if turn == 0
+                        else (0.0 if turn == 1 else math.sqrt(max(low, 1e-3) * high))
+                    )
                     for o in range(step.shape[0]):
                         now[o] = amounts[c, o] + own[o] * middle + added[o] * added_amounts[a]
                     fired = run_probe(
-                        groups, slot_node, single, half_over_c, step, group, now, thresholds[c],
-                        trace, v, scratch, slow, fast, total, drive,
+                        groups,
+                        slot_node,
+                        single,
+                        half_over_c,
+                        step,
+                        group,
+                        now,
+                        thresholds[c],
+                        trace,
+                        v,
+                        scratch,
+                        slow,
+                        fast,
+                        total,
+                        drive,
                     )
                     if fired >= 0:
                         high = middle
@@ -188,8 +265,22 @@ def run_thresholds(
 
 @njit(nogil=True)
 def run_chances(
-    plans, stretches, groups, slot_node, numbers, loads, thresholds, multiples, step, group,
-    contact, release, cv, trials, length, out,
+    plans,
+    stretches,
+    groups,
+    slot_node,
+    numbers,
+    loads,
+    thresholds,
+    multiples,
+    step,
+    group,
+    contact,
+    release,
+    cv,
+    trials,
+    length,
+    out,
 ):
     """Fill out (cell, reading) with the share of `trials` in which the stimulated input fires.
 
@@ -208,7 +299,14 @@ def run_chances(
     for c in range(loads.shape[0]):
         for r in range(out.shape[1]):
             set_geometry(
-                plan, stretches, multiples[c, r], loads[c], conductance, leak, powers, work,
+                plan,
+                stretches,
+                multiples[c, r],
+                loads[c],
+                conductance,
+                leak,
+                powers,
+                work,
                 half_over_c,
             )
             fires = 0
@@ -222,8 +320,21 @@ def run_chances(
                     )
                     now[o] = amount
                 fired = run_probe(
-                    groups, slot_node, single, half_over_c, step, group, now, thresholds[c], trace,
-                    v, scratch, slow, fast, total, drive,
+                    groups,
+                    slot_node,
+                    single,
+                    half_over_c,
+                    step,
+                    group,
+                    now,
+                    thresholds[c],
+                    trace,
+                    v,
+                    scratch,
+                    slow,
+                    fast,
+                    total,
+                    drive,
                 )
                 fires += 1 if fired >= 0 else 0
             out[c, r] = fires / trials
@@ -330,14 +441,16 @@ def run_tails(goals, release, cv, out):
                 out[c, r] = 1.0
             elif goal > 1e300:
                 out[c, r] = 0.0
-            elif r > 0 and goal == goals[c, r - 1] and (
-                release[c, r, 0] == release[c, r - 1, 0]
-                and release[c, r, 1] == release[c, r - 1, 1]
-                and release[c, r, 2] == release[c, r - 1, 2]
+            elif (
+                r > 0
+                and goal == goals[c, r - 1]
+                and (
+                    release[c, r, 0] == release[c, r - 1, 0]
+                    and release[c, r, 1] == release[c, r - 1, 1]
+                    and release[c, r, 2] == release[c, r - 1, 2]
+                )
             ):
                 out[c, r] = out[c, r - 1]
             else:
                 count_chances(release[c, r, 0], release[c, r, 1], chances)
-                out[c, r] = tail_of(
-                    goal, chances, int(release[c, r, 0]) + 2, release[c, r, 2], cv
-                )
+                out[c, r] = tail_of(goal, chances, int(release[c, r, 0]) + 2, release[c, r, 2], cv)

@@ -73,8 +73,15 @@ def state_of(scene: Scene, wiring: Wiring, cells: Cells, route: Mixture, factors
         The factor that each channel expresses, channels in the order of the route's shares.
     """
     shape = (factors.shape[0], len(scene.contacts), factors.shape[1])
-    base = {n: np.repeat(cells.release[n][:, :, None], shape[2], axis=2) for n in ("sites", "quantum", "probability")}
-    sites, quantum, probability = base["sites"].copy(), base["quantum"].copy(), base["probability"].copy()
+    base = {
+        n: np.repeat(cells.release[n][:, :, None], shape[2], axis=2)
+        for n in ("sites", "quantum", "probability")
+    }
+    sites, quantum, probability = (
+        base["sites"].copy(),
+        base["quantum"].copy(),
+        base["probability"].copy(),
+    )
     neck = np.tile(wiring.contacts["neck"][None, :, None] * 1e-3, (shape[0], 1, shape[2]))
     sites[:, wiring.contacts["added"] == 1] = 0.0
     width = np.ones((shape[0], shape[2], len(wiring.stretches)))
@@ -132,7 +139,9 @@ def position(g: Floats, top: float, nodes: int) -> Floats:
 
 def axis(top: float, nodes: int) -> Floats:
     """Return the conductances (nS) at the nodes of a table's axis."""
-    return np.asarray(SCALE * np.expm1(np.linspace(0.0, math.log1p(top / SCALE), nodes)), dtype=float)
+    return np.asarray(
+        SCALE * np.expm1(np.linspace(0.0, math.log1p(top / SCALE), nodes)), dtype=float
+    )
 
 
 def _weights(at: Floats, nodes: int) -> tuple[Ints, Floats]:
@@ -213,7 +222,9 @@ class Reader:
         scene, rows = self.scene, []
         starts = min(scene.contacts[k].delay for k in self.own_contacts(name))
         for k, contact in enumerate(scene.contacts):
-            delays = [d.delay for d in scene.drives if d.driver == name and d.driven == contact.input]
+            delays = [
+                d.delay for d in scene.drives if d.driver == name and d.driven == contact.input
+            ]
             mine = contact.input == name
             if mine:
                 delays = [0.0]
@@ -224,11 +235,9 @@ class Reader:
                 own = contact.share if mine and not contact.added else 0.0
                 rows.append((step, k, own, float(mine and contact.added), float(not mine)))
         rows.sort()
-        step, contact, own, added, fixed = (np.array(column) for column in zip(*rows, strict=True))
-        return Openings(
-            contact.astype(np.int64), step.astype(np.int64), own.astype(float),
-            added.astype(float), fixed.astype(float),
-        )
+        columns = [np.array(column) for column in zip(*rows, strict=True)]
+        steps, chosen = columns[0].astype(np.int64), columns[1].astype(np.int64)
+        return Openings(chosen, steps, *(column.astype(float) for column in columns[2:]))
 
     def premise(self, name: str, route: Mixture | None) -> str:
         """Return why the tables do not hold for firing by this input; empty when they hold."""
@@ -290,7 +299,9 @@ class Reader:
             extra = axis(self.added_top, ADDED_NODES)
         return (varies, key), multiples, extra
 
-    def _kept(self, key: tuple[object, ...], make: Callable[[], tuple[Floats, ...]]) -> tuple[Floats, ...]:
+    def _kept(
+        self, key: tuple[object, ...], make: Callable[[], tuple[Floats, ...]]
+    ) -> tuple[Floats, ...]:
         """Return a table, made once per reader."""
         with self._lock:
             if key not in self._tables:
@@ -307,13 +318,22 @@ class Reader:
             pairs = np.array([(g, a) for a in extra for g in own])
             amounts = (
                 self._fixed(opened)[:, None, :]
-                + pairs[None, :, :1] * opened.own + pairs[None, :, 1:] * opened.added
+                + pairs[None, :, :1] * opened.own
+                + pairs[None, :, 1:] * opened.added
             )
             out = np.zeros((len(self.loads), len(multiples), len(pairs), 4))
             probes().run_shapes(
-                wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
-                multiples, opened.step, wiring.contacts["group"][opened.contact].copy(),
-                np.ascontiguousarray(amounts), round(EPSP_LENGTH / self.scene.dt), out,
+                wiring.plan,
+                wiring.stretches,
+                wiring.groups,
+                wiring.slot_node,
+                self.loads,
+                multiples,
+                opened.step,
+                wiring.contacts["group"][opened.contact].copy(),
+                np.ascontiguousarray(amounts),
+                round(EPSP_LENGTH / self.scene.dt),
+                out,
             )
             across = max(len(multiples), len(extra))
             return tuple(
@@ -330,10 +350,22 @@ class Reader:
         def make() -> tuple[Floats, ...]:
             goals = np.zeros((len(self.loads), len(multiples), len(extra)))
             probes().run_thresholds(
-                wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
-                self.thresholds, multiples, opened.step,
-                wiring.contacts["group"][opened.contact].copy(), self._fixed(opened), opened.own,
-                opened.added, extra, LARGEST, round(SPIKE_LENGTH / self.scene.dt), goals,
+                wiring.plan,
+                wiring.stretches,
+                wiring.groups,
+                wiring.slot_node,
+                self.loads,
+                self.thresholds,
+                multiples,
+                opened.step,
+                wiring.contacts["group"][opened.contact].copy(),
+                self._fixed(opened),
+                opened.own,
+                opened.added,
+                extra,
+                LARGEST,
+                round(SPIKE_LENGTH / self.scene.dt),
+                goals,
             )
             return (goals.reshape(len(self.loads), -1),)
 
@@ -355,7 +387,9 @@ class Reader:
         """Return the position of every reading on the table's second axis."""
         varies = self._varies(name, route)
         if varies == "added":
-            return position(state.conductance(self.added_contacts(name)), self.added_top, ADDED_NODES)
+            return position(
+                state.conductance(self.added_contacts(name)), self.added_top, ADDED_NODES
+            )
         if varies != "width" or route is None:
             return None
         low, high, limited = self._width_axis(route)
@@ -376,7 +410,8 @@ class Reader:
         along = position(state.conductance(self.own_contacts(name)), self.top, OWN_NODES)
         across = self._across(name, route, state)
         return Shape(
-            interpolate(peak, along, across), interpolate(rise, along, across),
+            interpolate(peak, along, across),
+            interpolate(rise, along, across),
             interpolate(half, along, across),
         )
 
@@ -390,17 +425,24 @@ class Reader:
         for c in range(n):
             for r in range(readings):
                 probes().run_shapes(
-                    wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node,
-                    self.loads[c : c + 1], np.ascontiguousarray(state.width[c, r][None]), opened.step,
-                    group, np.ascontiguousarray(amounts[c, :, r][None, None]),
-                    round(EPSP_LENGTH / self.scene.dt), out[c : c + 1, r : r + 1],
+                    wiring.plan,
+                    wiring.stretches,
+                    wiring.groups,
+                    wiring.slot_node,
+                    self.loads[c : c + 1],
+                    np.ascontiguousarray(state.width[c, r][None]),
+                    opened.step,
+                    group,
+                    np.ascontiguousarray(amounts[c, :, r][None, None]),
+                    round(EPSP_LENGTH / self.scene.dt),
+                    out[c : c + 1, r : r + 1],
                 )
         return Shape(out[:, :, 0, 0], out[:, :, 0, 2], out[:, :, 0, 3])
 
     def threshold(
         self, name: str, route: Mixture | None, state: State, *, inhibition: bool = True
     ) -> Floats:
-        """Return the own conductance (nS) that fires the cell at every reading, inf out of reach."""
+        """Return the own conductance (nS) that fires the cell at each reading, inf out of reach."""
         goals = self._goals(name, route, inhibition)
         across = self._across(name, route, state)
         if across is None:
@@ -424,8 +466,14 @@ class Reader:
             goals = self._goals(name, route, inhibition)
             roots, weights = np.polynomial.hermite_e.hermegauss(5)
             probes().run_two_contacts(
-                mine, _release(state, self.added_contacts(name)[0]), cv,
-                axis(self.added_top, ADDED_NODES), goals, roots, weights / weights.sum(), out,
+                mine,
+                _release(state, self.added_contacts(name)[0]),
+                cv,
+                axis(self.added_top, ADDED_NODES),
+                goals,
+                roots,
+                weights / weights.sum(),
+                out,
             )
             return out
         goal = np.ascontiguousarray(self.threshold(name, route, state, inhibition=inhibition))
@@ -438,12 +486,22 @@ class Reader:
         release = np.stack([_release(state, int(k)) for k in opened.contact], axis=2)
         out = np.zeros(release.shape[:2])
         probes().run_chances(
-            wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node,
-            np.ascontiguousarray(self.cells.cells["number"]), self.loads, self.thresholds,
-            np.ascontiguousarray(state.width), opened.step,
-            wiring.contacts["group"][opened.contact].copy(), opened.contact,
-            np.ascontiguousarray(release), wiring.contacts["cv"][opened.contact].copy(), trials,
-            round(SPIKE_LENGTH / self.scene.dt), out,
+            wiring.plan,
+            wiring.stretches,
+            wiring.groups,
+            wiring.slot_node,
+            np.ascontiguousarray(self.cells.cells["number"]),
+            self.loads,
+            self.thresholds,
+            np.ascontiguousarray(state.width),
+            opened.step,
+            wiring.contacts["group"][opened.contact].copy(),
+            opened.contact,
+            np.ascontiguousarray(release),
+            wiring.contacts["cv"][opened.contact].copy(),
+            trials,
+            round(SPIKE_LENGTH / self.scene.dt),
+            out,
         )
         return out
 
@@ -452,10 +510,17 @@ class Reader:
         wiring, weak = self.wiring, 0.01
         out = np.zeros((len(self.loads), 1, 1, 4))
         probes().run_shapes(
-            wiring.plan, wiring.stretches, wiring.groups, wiring.slot_node, self.loads,
-            np.ones((1, len(wiring.stretches))), np.zeros(1, np.int64),
-            wiring.contacts["group"][[contact]].copy(), np.full((len(self.loads), 1, 1), weak),
-            round(EPSP_LENGTH / self.scene.dt), out,
+            wiring.plan,
+            wiring.stretches,
+            wiring.groups,
+            wiring.slot_node,
+            self.loads,
+            np.ones((1, len(wiring.stretches))),
+            np.zeros(1, np.int64),
+            wiring.contacts["group"][[contact]].copy(),
+            np.full((len(self.loads), 1, 1), weak),
+            round(EPSP_LENGTH / self.scene.dt),
+            out,
         )
         return np.asarray(out[:, 0, 0, 0] / weak, dtype=float)
 

@@ -142,7 +142,7 @@ def present(p, S, C, D, DC, low, high, t, counts, post_count, window):
 
 @njit(nogil=True)
 def learn(p, S, C, X, Y, fx, fy, D, DC, low, high, t, pre, n_pre, arrived, site_first, site_of):
-    """Apply one instant: presynaptic events `pre`, local spikes of amplitude `arrived[site]` > 0."""
+    """Apply one instant: presynaptic events `pre`, local spikes where `arrived[site]` > 0."""
     some_post = False
     for site in range(arrived.shape[0]):
         if arrived[site] > 0.0:
@@ -223,8 +223,11 @@ def express(contacts, base, k, channels, expressed, i, now):
     for ch in range(channels.shape[0]):
         target = channels[ch].target
         value = powered(
-            expressed[ch, i], channels[ch].exponent, channels[ch].excess == 1,
-            channels[ch].lowest, channels[ch].highest,
+            expressed[ch, i],
+            channels[ch].exponent,
+            channels[ch].excess == 1,
+            channels[ch].lowest,
+            channels[ch].highest,
         )
         if target == 0:
             u = min(u * value, base[k].highest)
@@ -334,7 +337,10 @@ def run_cell(w, cells, log, c, stop):
     events, reading_step, sites, slot_node = w.events, w.reading_step, w.sites, w.slot_node
     base, high, low, p = cells.release[c], cells.high[c], w.low, cells.parameters[c]
     learner_site, site_first, taus_pre, taus_post = (
-        w.learner_site, w.site_first, w.taus_pre, w.taus_post,
+        w.learner_site,
+        w.site_first,
+        w.taus_pre,
+        w.taus_post,
     )
     spike_step, releases = log.spike_step[c], log.releases[c]
     n_learners, n_contacts, n_sites = learner_site.shape[0], contacts.shape[0], sites.shape[0]
@@ -435,10 +441,10 @@ def run_cell(w, cells, log, c, stop):
         if RATES and closes == step:
             present(p, S, C, D, DC, low, high, step * dt, counts, post_count, plan.window * dt)
             post_count, closes, flowed = 0.0, -1, step
-        if (HAS_FLOW or HAS_CELL_FLOW) and (due or next_reading == step) and closes < 0:
-            if step > flowed:
-                flow_to(p, S, C, D, DC, low, high, (step - flowed) * dt)
-                flowed = step
+        flows = (HAS_FLOW or HAS_CELL_FLOW) and closes < 0 and step > flowed
+        if flows and (due or next_reading == step):
+            flow_to(p, S, C, D, DC, low, high, (step - flowed) * dt)
+            flowed = step
         if next_tick <= step:
             while next_tick <= step:
                 tick_expression(p, S, channels, history, ticks, expressed)
@@ -447,7 +453,14 @@ def run_cell(w, cells, log, c, stop):
             express_all(contacts, base, channels, expressed, now)
             if widen(stretches, w.beyond, contacts, channels, expressed, multiple):
                 rebuild(
-                    plan, stretches, multiple, cell.load, conductance, leak, powers, work,
+                    plan,
+                    stretches,
+                    multiple,
+                    cell.load,
+                    conductance,
+                    leak,
+                    powers,
+                    work,
                     half_over_c,
                 )
         while next_reading == step:
@@ -456,7 +469,9 @@ def run_cell(w, cells, log, c, stop):
                     log.variables[c, r, row, i] = S[row, i]
                 log.factor[c, r, i] = factor_of(p, S, i)
                 for ch in range(n_channels):
-                    log.expressed[c, r, ch, i] = expressed[ch, i] if tick > 0 else log.factor[c, r, i]
+                    log.expressed[c, r, ch, i] = (
+                        expressed[ch, i] if tick > 0 else log.factor[c, r, i]
+                    )
             for s in range(multiple.shape[0]):
                 log.diameter[c, r, s] = multiple[s]
             for row in range(N_CELL):
@@ -479,8 +494,14 @@ def run_cell(w, cells, log, c, stop):
                         express(contacts, base, k, channels, expressed, j, now)
                     if now[k, 0] > 0.0:
                         amount = release(
-                            contacts, k, deterministic, streams[k], events[e].ordinal, step * dt,
-                            now, memory,
+                            contacts,
+                            k,
+                            deterministic,
+                            streams[k],
+                            events[e].ordinal,
+                            step * dt,
+                            now,
+                            memory,
                         )
                         g = contacts[k].group
                         scaled = amount * groups[g].norm
@@ -519,8 +540,23 @@ def run_cell(w, cells, log, c, stop):
                     for row in range(Y.shape[0]):
                         fy[row] = table_y[row, 0, gap & 255] * table_y[row, 1, gap >> 8]
                 learn(
-                    p, S, C, X, Y, fx, fy, D, DC, low, high, step * dt, pre, n_pre, arrived,
-                    site_first, learner_site,
+                    p,
+                    S,
+                    C,
+                    X,
+                    Y,
+                    fx,
+                    fy,
+                    D,
+                    DC,
+                    low,
+                    high,
+                    step * dt,
+                    pre,
+                    n_pre,
+                    arrived,
+                    site_first,
+                    learner_site,
                 )
                 traces_jump(X, Y, fx, fy, pre, n_pre, arrived)
         if step >= n_steps:
@@ -564,8 +600,20 @@ def run_cells(w, cells, log, stop):
 
 @njit(nogil=True)
 def run_imposed(
-    p, starts, cell_starts, low, high, taus_pre, taus_post, window, event_time, event_learner,
-    reading_time, variables, factors, cell_states,
+    p,
+    starts,
+    cell_starts,
+    low,
+    high,
+    taus_pre,
+    taus_post,
+    window,
+    event_time,
+    event_learner,
+    reading_time,
+    variables,
+    factors,
+    cell_states,
 ):
     """Run the rule alone on imposed spike times (ms); a learner of -1 is a spike of the cell."""
     n_learners = high.shape[1]
@@ -626,7 +674,22 @@ def run_imposed(
                 for row in range(Y.shape[0]):
                     fy[row] = math.exp(-gap / taus_post[row])
             learn(
-                p, S, C, X, Y, fx, fy, D, DC, low, high, t, pre, n_pre, arrived, site_first,
+                p,
+                S,
+                C,
+                X,
+                Y,
+                fx,
+                fy,
+                D,
+                DC,
+                low,
+                high,
+                t,
+                pre,
+                n_pre,
+                arrived,
+                site_first,
                 site_of,
             )
             traces_jump(X, Y, fx, fy, pre, n_pre, arrived)

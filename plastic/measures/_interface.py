@@ -53,9 +53,7 @@ class Readout:
     def per_input(self, values: Floats, *, product: bool = False) -> Floats:
         """Sum (or multiply) an array (cell, contact, reading) over the contacts of each input."""
         collect = np.prod if product else np.sum
-        rows = [
-            collect(values[:, self.input_of == i], axis=1) for i in range(self.peak.shape[1])
-        ]
+        rows = [collect(values[:, self.input_of == i], axis=1) for i in range(self.peak.shape[1])]
         return np.stack(rows, axis=1)
 
     @property

@@ -29,7 +29,12 @@ Target = Literal["probability", "quantum", "sites", "neck", "added_sites", "diam
 
 #: the physical variables a factor may move; the order is the engine's code for them
 TARGETS: tuple[Target, ...] = (
-    "probability", "quantum", "sites", "neck", "added_sites", "diameter",
+    "probability",
+    "quantum",
+    "sites",
+    "neck",
+    "added_sites",
+    "diameter",
 )
 
 

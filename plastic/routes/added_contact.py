@@ -13,8 +13,9 @@ class AddedContact(Route):
     minutes: lasting new spines need half an hour, mature synapses hours.
     """
 
-    delay: float = parameter(1_800_000.0, "ms", low=0, source="lasting new spines about 30 min; "
-                             "Engert & Bonhoeffer 1999")
+    delay: float = parameter(
+        1_800_000.0, "ms", low=0, source="lasting new spines about 30 min; Engert & Bonhoeffer 1999"
+    )
     tau: float = parameter(3_600_000.0, "ms", low=0, source="ours: maturation over hours")
     highest: float = parameter(10.0, "1", low=1, source="ours: as for release_sites")
 

@@ -15,8 +15,9 @@ class SpineNeck(Route):
 
     delay: float = parameter(0.0, "ms", low=0, source="ours")
     tau: float = parameter(180_000.0, "ms", low=0, source="minutes; Tonnesen et al. 2014")
-    lowest: float = parameter(0.1, "1", low=0, high=1, source="ours: a neck ten times less resistive "
-                              "is no neck")
+    lowest: float = parameter(
+        0.1, "1", low=0, high=1, source="ours: a neck ten times less resistive is no neck"
+    )
 
     target = "neck"
     sign = -1

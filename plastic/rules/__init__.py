@@ -8,3 +8,5 @@ from plastic.rules._interface import Rule
 _catalogue: Catalogue[Rule] = Catalogue("plastic.rules", "rule")
 names = _catalogue.names
 find = _catalogue.find
+
+__all__ = ["Rule", "find", "names"]

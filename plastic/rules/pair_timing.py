@@ -21,7 +21,9 @@ class PairTiming(Rule):
     """
 
     a_plus: float = parameter(0.777 / 60, "1", low=0, high=1, source=BI_POO + ", from memory; / 60")
-    a_minus: float = parameter(0.273 / 60, "1", low=0, high=1, source=BI_POO + ", from memory; / 60")
+    a_minus: float = parameter(
+        0.273 / 60, "1", low=0, high=1, source=BI_POO + ", from memory; / 60"
+    )
     tau_plus: float = parameter(16.8, "ms", low=1e-3, high=1e4, source=BI_POO)
     tau_minus: float = parameter(33.7, "ms", low=1e-3, high=1e4, source=BI_POO)
     w_max: float = parameter(
@@ -32,7 +34,10 @@ class PairTiming(Rule):
         "hippocampal_culture": {},
         "near_balanced": {"a_plus": 0.005, "a_minus": 0.00525, "tau_plus": 20, "tau_minus": 20},
         "visual_cortex": {
-            "a_plus": 1.03 / 60, "a_minus": 0.51 / 60, "tau_plus": 13.3, "tau_minus": 34.5,
+            "a_plus": 1.03 / 60,
+            "a_minus": 0.51 / 60,
+            "tau_plus": 13.3,
+            "tau_minus": 34.5,
         },
     }
     equation = "D > 0: dw = a_plus exp(-D/tau_plus);  D < 0: dw = -a_minus exp(D/tau_minus)"

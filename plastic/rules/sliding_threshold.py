@@ -13,7 +13,7 @@ OURS = "ours: no published spiking constants exist"
 class SlidingThreshold(Rule):
     """BCM rule: active inputs are depressed below a threshold rate and potentiated above it.
 
-    Per presentation of length T = ``window``: ``dw = eta x y (y - theta)`` with x and y the pre- and
+    Per presentation of length ``window``: ``dw = eta x y (y - theta)`` with x and y the pre- and
     postsynaptic rates, while ``tau_theta dtheta/dt = theta_rest + y**2 / y_0 - theta``.
 
     On patterns x and y are the rates themselves and with ``theta_rest = 0`` this is the published
@@ -40,8 +40,13 @@ class SlidingThreshold(Rule):
 
     sets = {
         "patterns": {
-            "eta": 0.01, "tau_theta": 10, "y_0": 1, "theta_rest": 0, "window": 1,
-            "w_min": -1e3, "w_max": 1e3,
+            "eta": 0.01,
+            "tau_theta": 10,
+            "y_0": 1,
+            "theta_rest": 0,
+            "window": 1,
+            "w_min": -1e3,
+            "w_max": 1e3,
         },
     }
     equation = "dw = eta x y (y - theta);  tau_theta dtheta/dt = theta_rest + y^2/y_0 - theta"

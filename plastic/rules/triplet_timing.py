@@ -24,7 +24,9 @@ class TripletTiming(Rule):
     a3_minus: float = parameter(0.0, "1", low=0, high=1, source=PG)
     tau_plus: float = parameter(16.8, "ms", low=1e-3, high=1e4, source=PG)
     tau_minus: float = parameter(33.7, "ms", low=1e-3, high=1e4, source=PG)
-    tau_x: float = parameter(101.0, "ms", low=1e-3, high=1e4, source=PG + "; unused when a3_minus = 0")
+    tau_x: float = parameter(
+        101.0, "ms", low=1e-3, high=1e4, source=PG + "; unused when a3_minus = 0"
+    )
     tau_y: float = parameter(114.0, "ms", low=1e-3, high=1e4, source=PG)
     w_max: float = parameter(
         10.0, "1", low=1, high=1e6, source="ours: far above any measured change, stops a runaway"
@@ -33,16 +35,28 @@ class TripletTiming(Rule):
     sets = {
         "visual_minimal": {},
         "visual_full": {
-            "a2_plus": 5e-10, "a3_plus": 6.2e-3, "a2_minus": 7.0e-3, "a3_minus": 2.3e-4,
-            "tau_x": 101, "tau_y": 125,
+            "a2_plus": 5e-10,
+            "a3_plus": 6.2e-3,
+            "a2_minus": 7.0e-3,
+            "a3_minus": 2.3e-4,
+            "tau_x": 101,
+            "tau_y": 125,
         },
         "hippocampal_minimal": {
-            "a2_plus": 5.3e-3, "a3_plus": 8.0e-3, "a2_minus": 3.5e-3, "a3_minus": 0,
-            "tau_x": 946, "tau_y": 40,
+            "a2_plus": 5.3e-3,
+            "a3_plus": 8.0e-3,
+            "a2_minus": 3.5e-3,
+            "a3_minus": 0,
+            "tau_x": 946,
+            "tau_y": 40,
         },
         "hippocampal_full": {
-            "a2_plus": 6.1e-3, "a3_plus": 6.7e-3, "a2_minus": 1.6e-3, "a3_minus": 1.4e-3,
-            "tau_x": 946, "tau_y": 27,
+            "a2_plus": 6.1e-3,
+            "a3_plus": 6.7e-3,
+            "a2_minus": 1.6e-3,
+            "a3_minus": 1.4e-3,
+            "tau_x": 946,
+            "tau_y": 27,
         },
     }
     equation = "pre: dw = -o1 (a2_minus + a3_minus r2);  post: dw = r1 (a2_plus + a3_plus o2)"

@@ -30,7 +30,7 @@ Arrays = dict[str, NDArray[np.generic]]
 AFTERMATH = 50.0
 
 
-class Stopped(Exception):
+class Stopped(Exception):  # noqa: N818 - a message, not a mistake
     """The run was asked to stop before this block was done."""
 
 
@@ -95,8 +95,12 @@ def wiring_of(study: Study, population: Population, arm: Arm, *, clocked: bool =
     times = input_times(scene, schedule.times, inhibition_blocked=schedule.inhibition_blocked)
     events = events_of(scene, times, schedule.injected, pre_is=rule.pre_is)
     return wire(
-        scene, events, end=schedule.end, readings=reading_times(schedule)[0],
-        numbers=numbers_of(rule), route=arm.route,
+        scene,
+        events,
+        end=schedule.end,
+        readings=reading_times(schedule)[0],
+        numbers=numbers_of(rule),
+        route=arm.route,
         immediate=study.compare.expression == "immediate",
     )
 
@@ -178,7 +182,7 @@ def _expressed(route: Mixture, log: Log) -> Floats:
 
 
 def _by_input(scene: Scene, names: list[str], values: Floats, other: float) -> Floats:
-    """Return (cell, reading, learner) as (cell, input, reading), `other` where it does not learn."""
+    """Return (cell, reading, learner) as (cell, input, reading), `other` without learning."""
     learners = scene.ordered_learners()
     rows = [
         values[:, :, learners.index(n)] if n in learners else np.full(values.shape[:2], other)
@@ -201,7 +205,9 @@ def _measured(
         rise=_stack([s.rise for s in shapes]),
         half_width=_stack([s.half_width for s in shapes]),
         fires=fires,
-        sites=state.sites, probability=state.probability, quantum=state.quantum,
+        sites=state.sites,
+        probability=state.probability,
+        quantum=state.quantum,
         effect=bench.effects(),
         input_of=np.array(index),
         quantal_cv=np.array([k.quantal_cv for k in scene.contacts]),
@@ -229,7 +235,7 @@ def spikes_of_repeats(schedule: Schedule, log: Log, dt: float) -> tuple[Floats, 
 
 
 def _first_lags(schedule: Schedule, log: Log, name: str, dt: float) -> Floats:
-    """Return the mean realised lag (ms) from the input's first event to the next spike, per cell."""
+    """Return the mean realised lag (ms) from the input's first event to the spike, per cell."""
     own = schedule.pattern.get(name, np.zeros(0))
     lags = np.full(len(log.ended), np.nan)
     if not len(own) or not len(schedule.repeat_starts):
@@ -247,8 +253,16 @@ def _first_lags(schedule: Schedule, log: Log, name: str, dt: float) -> Floats:
 
 
 def _judged(
-    bench: Bench, arm: Arm, log: Log, fires: Floats, induced: Floats, names: list[str],
-    schedule: Schedule, times: Floats, repeats: NDArray[np.int64], baseline: int,
+    bench: Bench,
+    arm: Arm,
+    log: Log,
+    fires: Floats,
+    induced: Floats,
+    names: list[str],
+    schedule: Schedule,
+    times: Floats,
+    repeats: NDArray[np.int64],
+    baseline: int,
 ) -> Arrays:
     study, goal = bench.study, bench.study.compare.criterion.alone_fires
     name = study.compare.criterion.input
@@ -259,9 +273,15 @@ def _judged(
     minutes = (times - schedule.epochs[1].start) / 60_000.0
     judged = {
         kind: judge(
-            chances[:, who], goal, baseline=baseline, repeats=repeats, minutes=minutes,
-            factor=log.factor[:, :, learner], partner_fired=fired,
-            needs_partner=bool(schedule.partner) and not schedule.control, reachable=can,
+            chances[:, who],
+            goal,
+            baseline=baseline,
+            repeats=repeats,
+            minutes=minutes,
+            factor=log.factor[:, :, learner],
+            partner_fired=fired,
+            needs_partner=bool(schedule.partner) and not schedule.control,
+            reachable=can,
         )
         for kind, chances in (("", fires), ("_induced", induced))
     }

@@ -71,8 +71,13 @@ def grid_of(study: Study, population: Population) -> Grid:
     ]
     left_out = study.controls_left_out()
     return Grid(
-        arms, [r.label for r in compare.rules], [m.name for m in mixtures],
-        [*chosen, *left_out], chosen, mixtures, left_out,
+        arms,
+        [r.label for r in compare.rules],
+        [m.name for m in mixtures],
+        [*chosen, *left_out],
+        chosen,
+        mixtures,
+        left_out,
     )
 
 

@@ -56,8 +56,11 @@ class Population:
         """Return the cells without any rule, for readings."""
         number = np.arange(len(self.load))[chosen]
         release = table(
-            layout.RELEASE, sites=self.sites[chosen], probability=self.probability[chosen],
-            highest=self.highest[chosen], quantum=self.quantum[chosen],
+            layout.RELEASE,
+            sites=self.sites[chosen],
+            probability=self.probability[chosen],
+            highest=self.highest[chosen],
+            quantum=self.quantum[chosen],
         )
         cells = table(
             layout.CELL, number=number, load=self.load[chosen], threshold=self.threshold[chosen]
@@ -75,7 +78,9 @@ class Population:
         for name in rule.amplitudes:
             at = list(rule.parameters).index(name)
             spread = parameters[:, at] * self.amplitude[chosen]
-            parameters[:, at] = np.clip(spread, rule.parameters[name].low, rule.parameters[name].high)
+            parameters[:, at] = np.clip(
+                spread, rule.parameters[name].low, rule.parameters[name].high
+            )
         high = np.tile(numbers.high[None, :, None], (n, 1, len(learners)))
         if hold and len(rule.weights) == 1:
             held = weight_at(rule, ceilings(self, route, chosen))
@@ -102,7 +107,8 @@ def _widened(scene: Scene) -> list[tuple[int, int]]:
     for s in range(len(scene.tree.stretch_parent)):
         beyond = scene.tree.beyond(s)
         here = [
-            c for c in scene.contacts
+            c
+            for c in scene.contacts
             if c.node in beyond and not c.added and c.input not in scene.inhibitory
         ]
         own = sum(c.input in scene.learners for c in here)
@@ -130,7 +136,9 @@ def scene_of(study: Study) -> Scene:
     cell, contacts, added = study.cell, [], []
     places = [place[:2] for it in study.inputs.values() for place in it.places]
     places += [
-        (it.added_contact.on, it.added_contact.at) for it in study.inputs.values() if it.added_contact
+        (it.added_contact.on, it.added_contact.at)
+        for it in study.inputs.values()
+        if it.added_contact
     ]
     tree = build_tree(cell.dendrite, places, cell.refine)
     for name, it in study.inputs.items():
@@ -141,22 +149,38 @@ def scene_of(study: Study) -> Scene:
             late = it.delay + it.added_contact.delay
             added.append(replace(_contact(name, it, node, 1.0), delay=late, added=True))
     return Scene(
-        tree=tree, rm=cell.membrane.resistance, ri=cell.membrane.axial, tau_m=cell.membrane.tau,
-        rest=cell.rest, reset=cell.reset, refractory=cell.refractory,
-        contacts=[*contacts, *added], learners=list(study.compare.learns),
+        tree=tree,
+        rm=cell.membrane.resistance,
+        ri=cell.membrane.axial,
+        tau_m=cell.membrane.tau,
+        rest=cell.rest,
+        reset=cell.reset,
+        refractory=cell.refractory,
+        contacts=[*contacts, *added],
+        learners=list(study.compare.learns),
         drives=[
             Drive(d.input, name, d.delay) for name, it in study.inputs.items() for d in it.driven_by
         ],
-        inhibitory=study.inhibitory, back_propagation=cell.back_propagation,
-        dt=study.dt, seed=study.seed, deterministic=study.deterministic,
+        inhibitory=study.inhibitory,
+        back_propagation=cell.back_propagation,
+        dt=study.dt,
+        seed=study.seed,
+        deterministic=study.deterministic,
     )
 
 
 def _contact(name: str, it: Input, node: int, share: float) -> Contact:
     receptor = Receptor(it.receptor.reversal, it.receptor.rise, it.receptor.decay)
     return Contact(
-        name, node, receptor, delay=it.delay, quantal_cv=it.release.quantum_cv,
-        recovery=it.release.depletion, facilitation=it.release.facilitation, neck=it.neck, share=share,
+        name,
+        node,
+        receptor,
+        delay=it.delay,
+        quantal_cv=it.release.quantum_cv,
+        recovery=it.release.depletion,
+        facilitation=it.release.facilitation,
+        neck=it.neck,
+        share=share,
     )
 
 
@@ -182,11 +206,18 @@ def populate(study: Study) -> Population:
         probability[:, k] = np.clip(p, 1e-3, release.highest)
         highest[:, k], quantum[:, k] = release.highest, release.quantum
     made = Population(
-        scene, load, np.maximum(threshold, floor) - cell.rest, 1000.0 / (load + dendritic),
+        scene,
+        load,
+        np.maximum(threshold, floor) - cell.rest,
+        1000.0 / (load + dendritic),
         draws.lognormal(
             1.0, study.compare.amplitude_cv, draws.named(study.seed, n, "amplitude of the rule")
         ),
-        sites, probability, highest, quantum, {},
+        sites,
+        probability,
+        highest,
+        quantum,
+        {},
     )
     return _recruited(study, made)
 
@@ -228,7 +259,8 @@ def _rising(row: Floats, grid: Floats) -> tuple[Floats, Floats]:
 def bare_reader(population: Population, chosen: slice = slice(None)) -> Reader:
     """Return a reader of some cells, with nothing happening."""
     scene = population.scene
-    numbers = Numbers(*(np.zeros(0) for _ in range(7)), 0.0)
+    none = np.zeros(0)
+    numbers = Numbers(none, none, none, none, none, none, none, 0.0)
     events = events_of(scene, {}, np.empty(0), pre_is="arrival")
     wiring = wire(scene, events, end=0.0, readings=np.empty(0), numbers=numbers, route=None)
     return Reader(scene, wiring, population.base(chosen))

@@ -138,8 +138,10 @@ def _check_room(study: Study, needed: int) -> None:
         return
     if needed > ROOM * memory:
         raise StudyError(
-            file=study.file, key="cells", value=study.cells,
-            allowed=f"would give {needed / 1e9:.1f} GB of results, and {ROOM * memory / 1e9:.1f} GB "
+            file=study.file,
+            key="cells",
+            value=study.cells,
+            allowed=f"would give {needed / 1e9:.1f} GB of results; {ROOM * memory / 1e9:.1f} GB "
             f"is what this machine can hold; at most {int(study.cells * ROOM * memory / needed):,} "
             "cells, or fewer arms",
         )

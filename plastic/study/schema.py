@@ -47,7 +47,9 @@ VARIABLES: dict[str, Variable] = {
     "quantum": Variable(_CONTACT, "nS", "quantal conductance, behind the spine neck"),
     "sites": Variable(_CONTACT, "1", "release sites"),
     "diameter": Variable(_STRETCH, "um", "diameter of the dendrite"),
-    "repeats_to_criterion": Variable(_CELL, "1", "repeats until the expressed change reached the criterion"),
+    "repeats_to_criterion": Variable(
+        _CELL, "1", "repeats until the expressed change reached the criterion"
+    ),
     "repeats_to_criterion_induced": Variable(
         _CELL, "1", "repeats until the induced change reached the criterion"
     ),
@@ -63,8 +65,9 @@ VARIABLES: dict[str, Variable] = {
     "partner_fired": Variable(_CELL, "1", "share of repeats with a spike of the cell"),
     "spikes": Variable(_CELL, "1", "spikes of the cell during the induction"),
     "realised_lag": Variable(
-        _CELL, "ms",
-        "mean realised lag, first presynaptic spike of a repeat to the spike of the soma next to it",
+        _CELL,
+        "ms",
+        "mean realised lag, first presynaptic spike of a repeat to the next spike of the soma",
     ),
     "ceiling": Variable(_CELL, "1", "factor at which every channel of the route is at its limit"),
 }

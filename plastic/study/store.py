@@ -31,7 +31,15 @@ from plastic.study.block import Arrays, read_inputs
 from plastic.study.grid import Arm, Grid, reading_times
 from plastic.study.model import Study
 from plastic.study.population import Population
-from plastic.study.schema import ARM, COMPLETE, NOT_APPLICABLE, NOT_RUN, STATUSES, VARIABLES, Variable
+from plastic.study.schema import (
+    ARM,
+    COMPLETE,
+    NOT_APPLICABLE,
+    NOT_RUN,
+    STATUSES,
+    VARIABLES,
+    Variable,
+)
 from plastic.version import VERSION
 
 RESULTS, MARK, BLOCKS = "results.nc", "run.json", "blocks"
@@ -180,13 +188,13 @@ def write_results(
     """
     with replacing(path) as part, h5netcdf.File(part, "w") as file:
         sizes = _axes(file, study, population, grid)
-        status = np.full([len(a) for a in (grid.rules, grid.routes, grid.protocols)], NOT_RUN, np.int8)
+        status = np.full(
+            [len(a) for a in (grid.rules, grid.routes, grid.protocols)], NOT_RUN, np.int8
+        )
         for k, name in enumerate(grid.protocols):
             if name in grid.not_applicable:
                 status[:, :, k] = NOT_APPLICABLE
-        made = {
-            name: _variable(file, name, kind, sizes) for name, kind in VARIABLES.items()
-        }
+        made = {name: _variable(file, name, kind, sizes) for name, kind in VARIABLES.items()}
         for arm in grid.arms:
             arrays = blocks(arm)
             for name, variable in made.items():
@@ -204,11 +212,18 @@ def _axes(file: Any, study: Study, population: Population, grid: Grid) -> dict[s
     """Write dimensions and coordinates; return the sizes."""
     scene, inputs = population.scene, read_inputs(study)
     readings = max(len(reading_times(s)[0]) for s in grid.schedules.values())
-    labels = {"rule": grid.rules, "route": grid.routes, "protocol": grid.protocols, "input": inputs,
-              "epoch": ["baseline", "induction", "follow_up"]}
+    labels = {
+        "rule": grid.rules,
+        "route": grid.routes,
+        "protocol": grid.protocols,
+        "input": inputs,
+        "epoch": ["baseline", "induction", "follow_up"],
+    }
     sizes = {k: len(v) for k, v in labels.items()} | {
-        "cell": study.cells, "contact": len(scene.contacts),
-        "stretch": len(scene.tree.stretch_parent), "reading": readings,
+        "cell": study.cells,
+        "contact": len(scene.contacts),
+        "stretch": len(scene.tree.stretch_parent),
+        "reading": readings,
     }
     file.dimensions = sizes
     for name, values in labels.items():
@@ -216,21 +231,66 @@ def _axes(file: Any, study: Study, population: Population, grid: Grid) -> dict[s
     for name in ("cell", "contact", "stretch", "reading"):
         _put(file, name, (name,), np.arange(sizes[name]), "1", f"number of the {name}")
     distance = scene.tree.node_distance
-    _put(file, "input_of", ("contact",), np.array([k.input for k in scene.contacts], dtype=object),
-         "1", "input of the contact")
-    _put(file, "distance", ("contact",), distance[[k.node for k in scene.contacts]], "um",
-         "path distance of the contact from the soma")
-    _put(file, "added", ("contact",), np.array([int(k.added) for k in scene.contacts], np.int8), "1",
-         "contact that exists only by the route added_contact", ("no", "yes"))
+    _put(
+        file,
+        "input_of",
+        ("contact",),
+        np.array([k.input for k in scene.contacts], dtype=object),
+        "1",
+        "input of the contact",
+    )
+    _put(
+        file,
+        "distance",
+        ("contact",),
+        distance[[k.node for k in scene.contacts]],
+        "um",
+        "path distance of the contact from the soma",
+    )
+    _put(
+        file,
+        "added",
+        ("contact",),
+        np.array([int(k.added) for k in scene.contacts], np.int8),
+        "1",
+        "contact that exists only by the route added_contact",
+        ("no", "yes"),
+    )
     near = distance[scene.tree.stretch_parent]
     _put(file, "stretch_from", ("stretch",), near, "um", "near end of the stretch")
-    _put(file, "stretch_to", ("stretch",), near + scene.tree.stretch_length, "um", "far end of the stretch")
+    _put(
+        file,
+        "stretch_to",
+        ("stretch",),
+        near + scene.tree.stretch_length,
+        "um",
+        "far end of the stretch",
+    )
     _timing(file, grid, readings)
-    _put(file, "threshold", ("cell",), population.threshold + scene.rest, "mV", "threshold of the spike")
-    _put(file, "input_resistance", ("cell",), population.input_resistance, "Mohm",
-         "input resistance at the soma")
-    _put(file, "amplitude", ("cell",), population.amplitude, "1",
-         "size of a rule's changes in this cell, multiple of the rule's own")
+    _put(
+        file,
+        "threshold",
+        ("cell",),
+        population.threshold + scene.rest,
+        "mV",
+        "threshold of the spike",
+    )
+    _put(
+        file,
+        "input_resistance",
+        ("cell",),
+        population.input_resistance,
+        "Mohm",
+        "input resistance at the soma",
+    )
+    _put(
+        file,
+        "amplitude",
+        ("cell",),
+        population.amplitude,
+        "1",
+        "size of a rule's changes in this cell, multiple of the rule's own",
+    )
     return sizes
 
 
@@ -248,13 +308,36 @@ def _timing(file: Any, grid: Grid, readings: int) -> None:
         start = schedule.epochs[1].start
         time[k, : len(at)] = (at - start) / 60_000.0
         repeats[k, : len(at)] = count
-        edges[k] = [[(e.start - start) / 60_000.0, (e.end - start) / 60_000.0] for e in schedule.epochs]
+        edges[k] = [
+            [(e.start - start) / 60_000.0, (e.end - start) / 60_000.0] for e in schedule.epochs
+        ]
     since = "time from the start of the induction"
-    _put(file, "control", ("protocol",), np.array(control, dtype=object), "1", "control that the arm is")
+    _put(
+        file,
+        "control",
+        ("protocol",),
+        np.array(control, dtype=object),
+        "1",
+        "control that the arm is",
+    )
     _put(file, "time", ("protocol", "reading"), time, "min", since)
     _put(file, "repeats", ("protocol", "reading"), repeats, "1", "repeats completed")
-    _put(file, "epoch_start", ("protocol", "epoch"), edges[:, :, 0], "min", f"{since}, start of the epoch")
-    _put(file, "epoch_end", ("protocol", "epoch"), edges[:, :, 1], "min", f"{since}, end of the epoch")
+    _put(
+        file,
+        "epoch_start",
+        ("protocol", "epoch"),
+        edges[:, :, 0],
+        "min",
+        f"{since}, start of the epoch",
+    )
+    _put(
+        file,
+        "epoch_end",
+        ("protocol", "epoch"),
+        edges[:, :, 1],
+        "min",
+        f"{since}, end of the epoch",
+    )
 
 
 def _control(name: str, schedule: Schedule | None, grid: Grid) -> str:
@@ -264,7 +347,12 @@ def _control(name: str, schedule: Schedule | None, grid: Grid) -> str:
 
 
 def _put(
-    file: Any, name: str, dims: tuple[str, ...], values: NDArray[Any], unit: str, long_name: str,
+    file: Any,
+    name: str,
+    dims: tuple[str, ...],
+    values: NDArray[Any],
+    unit: str,
+    long_name: str,
     flags: tuple[str, ...] = (),
 ) -> None:
     text = values.dtype == object

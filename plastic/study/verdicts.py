@@ -15,8 +15,13 @@ Floats = NDArray[np.float64]
 Ints = NDArray[np.int64]
 
 VERDICTS = (
-    "reached", "reached_then_lost", "not_within", "already_at_baseline", "depressed",
-    "partner_failed", "never",
+    "reached",
+    "reached_then_lost",
+    "not_within",
+    "already_at_baseline",
+    "depressed",
+    "partner_failed",
+    "never",
 )
 REACHED, LOST, NOT_WITHIN, ALREADY, DEPRESSED, PARTNER, NEVER = range(7)
 
@@ -38,7 +43,12 @@ CAUSES = (
     "without_a_neck_and_still_too_small",
 )
 _LIMIT_OF = {
-    "probability": 1, "quantum": 2, "sites": 3, "neck": 4, "added_sites": 5, "diameter": 6,
+    "probability": 1,
+    "quantum": 2,
+    "sites": 3,
+    "neck": 4,
+    "added_sites": 5,
+    "diameter": 6,
 }
 INHIBITION, CERTAIN, BEST_DIAMETER, DISTANCE, RULE_BOUND, SEVERAL, NO_NECK = range(7, 14)
 
