@@ -282,8 +282,8 @@ def _rule_part(rule: type[Rule]) -> tuple[str, dict[str, str]]:
         f"# ---- the rule {rule.__name__} ----\n"
         f"RATES = {rule.reads == 'rates'}\n"
         f"N_WEIGHTS, N_VARIABLES, N_CELL = {sizes}\n"
-        f"PRE_ADDS = {tuple(rule.traces[n].jump == 'add' for n in rows.pre)}\n"
-        f"POST_ADDS = {tuple(rule.traces[n].jump == 'add' for n in rows.post)}\n"
+        f"PRE_ADDS = {_adds(rule, rows.pre)}\n"
+        f"POST_ADDS = {_adds(rule, rows.post)}\n"
         f"HAS_FLOW, HAS_CELL_FLOW = {'flow' in hooks}, {'cell_flow' in hooks}",
     ]
     connections = {}
@@ -297,6 +297,11 @@ def _rule_part(rule: type[Rule]) -> tuple[str, dict[str, str]]:
         pieces.append(_plain_function(rule, "factor")[1])
     pieces += [_factor(rule, rows), "# ---- end of the rule ----"]
     return "\n\n\n".join(pieces) + "\n", connections
+
+
+def _adds(rule: type[Rule], names: tuple[str, ...]) -> tuple[bool, ...]:
+    """Return whether each trace adds; never empty, since the compiler wants a type."""
+    return tuple(rule.traces[n].jump == "add" for n in names) or (True,)
 
 
 #: hook -> (arguments of the connecting function, array that takes the changes)

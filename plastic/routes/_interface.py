@@ -69,7 +69,7 @@ class Route(Parametrised):
         value = np.asarray(factor, dtype=float)
         if self.form == "excess":
             return np.clip(value**share - 1.0, 0.0, self.highest)
-        with np.errstate(divide="ignore"):
+        with np.errstate(divide="ignore", over="ignore"):
             return np.clip(value ** (self.sign * share), self.lowest, self.highest)
 
     @classmethod

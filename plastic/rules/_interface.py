@@ -110,6 +110,8 @@ def weight(start: float | str, *, low: float | str, high: float | str) -> Any:
 
 def state(start: float | str, *, scope: Scope = "input") -> Any:
     """Declare a state; see the manual, item 3."""
+    if scope not in ("input", "cell"):
+        raise RuleError(f"a state's scope is 'input' or 'cell', not {scope!r}")
     return State(start, scope)
 
 
