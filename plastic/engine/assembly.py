@@ -90,11 +90,12 @@ class Scene:
 
     def ordered_learners(self) -> list[str]:
         """Return the learning inputs sorted by the distance of their first contact."""
-        distance = self.tree.node_distance
-        return sorted(
-            self.learners,
-            key=lambda name: (distance[self.contacts[self.primary(name)].node], self.primary(name)),
-        )
+
+        def place(name: str) -> tuple[float, int, int]:
+            node = self.contacts[self.primary(name)].node
+            return float(self.tree.node_distance[node]), node, self.primary(name)
+
+        return sorted(self.learners, key=place)
 
 
 def input_times(
@@ -131,32 +132,26 @@ def events_of(
         Which presynaptic moment the rule calls "pre".
     """
     learners = scene.ordered_learners()
-    rows: list[tuple[Ints, int, int, Ints]] = []
+    rows: list[tuple[Ints, int, int]] = []
     for k, contact in enumerate(scene.contacts):
         at = np.asarray(times.get(contact.input, ()), dtype=float)
         step = np.rint((at + contact.delay) / scene.dt).astype(np.int64)
         learns = contact.input in learners and k == scene.primary(contact.input)
         with_contact = learns and pre_is == "arrival"
         who = learners.index(contact.input) if learns else -1
-        rows.append((step, k, who if with_contact else -1, np.arange(len(at))))
+        rows.append((step, k, who if with_contact else -1))
         if learns and not with_contact:
             plain = np.rint(at / scene.dt).astype(np.int64)
-            rows.append((plain, -1, who, np.arange(len(at))))
+            rows.append((plain, -1, who))
     forced = np.rint(np.asarray(injected, float) / scene.dt).astype(np.int64)
-    rows.append((forced, -1, -1, np.arange(len(forced))))
+    rows.append((forced, -1, -1))
     step = np.concatenate([r[0] for r in rows])
     contact_of = np.concatenate([np.full(len(r[0]), r[1]) for r in rows])
     learner = np.concatenate([np.full(len(r[0]), r[2]) for r in rows])
-    ordinal = np.concatenate([r[3] for r in rows])
-    is_input = (contact_of >= 0) | (learner >= 0)  # injected spikes come first within a step
-    order = np.lexsort((learner, contact_of, is_input, step))
-    return table(
-        layout.EVENT,
-        step=step[order],
-        contact=contact_of[order],
-        learner=learner[order],
-        ordinal=ordinal[order],
-    )
+    # within a step: injected spikes, contacts that open, and then what learns from it
+    is_input = (contact_of >= 0) | (learner >= 0)
+    order = np.lexsort((contact_of, learner, is_input, step))
+    return table(layout.EVENT, step=step[order], contact=contact_of[order], learner=learner[order])
 
 
 def wire(
@@ -183,7 +178,9 @@ def wire(
         Ignore the delays and time constants of expression.
     """
     dt, tree = scene.dt, scene.tree
-    groups = list(dict.fromkeys((k.node, k.receptor) for k in scene.contacts))
+    kinds = dict.fromkeys((k.node, k.receptor) for k in scene.contacts)
+    groups = sorted(kinds, key=lambda kind: kind[0])
+    nodes = [node for node, _ in groups]
     learners = scene.ordered_learners()
     places = [scene.contacts[scene.primary(name)].node for name in learners]
     sites = [0, *dict.fromkeys(node for node in places if node != 0)]
@@ -199,7 +196,6 @@ def wire(
         dtype=np.int64,
     ).reshape(len(tree.stretch_parent), len(contacts))
     excites = np.array([int(k.input not in scene.inhibitory) for k in contacts])
-    slot_node = list(dict.fromkeys(node for node, _ in groups))
     plan = table(
         layout.PLAN,
         seed=scene.seed,
@@ -234,14 +230,17 @@ def wire(
         beyond=beyond,
         groups=table(
             layout.GROUP,
-            node=[node for node, _ in groups],
-            slot=[slot_node.index(node) for node, _ in groups],
             reversal=[r.reversal - scene.rest for _, r in groups],
             keep_decay=[np.exp(-dt / r.decay) for _, r in groups],
             keep_rise=[np.exp(-dt / r.rise) if r.rise > 0 else 0.0 for _, r in groups],
             norm=[float(norm(r.rise, r.decay)) for _, r in groups],
         ),
-        slot_node=_ints(slot_node),
+        slots=table(
+            layout.SLOT,
+            node=np.unique(nodes),
+            first=np.searchsorted(nodes, np.unique(nodes)),
+            last=np.searchsorted(nodes, np.unique(nodes), side="right"),
+        ),
         contacts=table(
             layout.CONTACT,
             group=[groups.index((k.node, k.receptor)) for k in contacts],
@@ -326,7 +325,8 @@ def ceiling(route: Mixture, highest_over_start: float, learned: Sequence[tuple[i
             reach = channel.highest + 1.0
         else:
             reach = channel.highest if channel.sign > 0 else 1.0 / max(channel.lowest, 1e-300)
-        largest = max(largest, float(reach) ** (1.0 / share))
+        with np.errstate(over="ignore"):  # beyond the largest number there is no ceiling
+            largest = max(largest, float(np.power(float(reach), 1.0 / share)))
     return largest
 
 
@@ -341,6 +341,5 @@ def empty_log(cells: Cells, wiring: Wiring, variables: int, spikes: int = 4096) 
         diameter=np.zeros((n, readings, len(wiring.stretches))),
         cell_states=np.zeros((n, readings, len(wiring.cell_starts))),
         spike_step=np.zeros((n, spikes), dtype=np.int64),
-        releases=np.zeros((n, len(wiring.contacts))),
         ended=np.zeros(n, layout.ENDED),
     )

@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike, NDArray
 
 from plastic.engine.kernel import Rows, module_for, numbers_of
 from plastic.engine.learning import Learner
-from plastic.errors import Misfit
+from plastic.errors import Misfit, RuleError
 from plastic.rules._interface import Rule
 
 
@@ -53,6 +53,8 @@ def impose(
     ------
     Misfit
         Times that are negative, unsorted, not finite, or twice the same for one input.
+    RuleError
+        A rule that returned something that is no number.
 
     Examples
     --------
@@ -69,7 +71,7 @@ def impose(
     after = _times("post", post)
     last = max([0.0, *(t[-1] for t in [*trains.values(), after] if len(t))])
     window = float(getattr(rule, "window", 0.0)) if rule.reads == "rates" else 0.0
-    finish = math.nextafter(last + window, math.inf) if end is None else float(end)
+    finish = math.nextafter(last + window, math.inf) if end is None else _times("end", end)[0]
     at = np.array([0.0, finish]) if readings is None else _times("readings", readings)
     time, who = _merged(list(trains.values()), after, finish)
     run = _compiled if compiled else _plain
@@ -78,7 +80,7 @@ def impose(
 
 
 def _times(name: str, values: ArrayLike) -> NDArray[np.float64]:
-    times = np.atleast_1d(np.asarray(values, dtype=float))
+    times = np.array(values, dtype=float, order="C", ndmin=1)  # one layout: compiled once
     if times.ndim != 1 or not np.isfinite(times).all() or (times < 0).any():
         raise Misfit(name, got=str(values), expected="finite times in ms, 0 or later")
     if (np.diff(times) <= 0).any():
@@ -130,6 +132,8 @@ def _compiled(
         factors,
         states,
     )
+    if not (np.isfinite(variables).all() and np.isfinite(states).all()):
+        raise RuleError(f"{type(rule).__name__}: a change is no number; compiled=False says where")
     return variables, factors, states
 
 

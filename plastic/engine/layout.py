@@ -28,14 +28,16 @@ PLAN = _fields(
 )
 #: a stretch of dendrite between two nodes; a child of -1 is a sealed stub; um
 STRETCH = _fields("parent child widens", "length diameter")
-#: receptors of one kind at one node; `slot` counts the nodes that have receptors
-GROUP = _fields("node slot", "reversal keep_decay keep_rise norm")
+#: receptors of one kind at one node
+GROUP = _fields("", "reversal keep_decay keep_rise norm")
+#: a node that has receptors, and the range of its groups
+SLOT = _fields("node first last", "")
 #: a contact; recovery and facilitation in ms (0: none), neck in Mohm
 CONTACT = _fields("group learner added excites", "cv recovery facilitation neck")
 #: where learning inputs see a spike of the cell; distance in um
 SITE = _fields("delay", "distance")
-#: an event; an injected spike has contact -1 and learner -1
-EVENT = _fields("step contact learner ordinal", "")
+#: an event; an injected spike has contact -1 and learner -1. There are millions: keep it small
+EVENT = np.dtype([("step", "i8"), ("contact", "i4"), ("learner", "i4")])
 #: one channel of a route; `exponent` is sign * share, `keep` the factor per tick
 CHANNEL = _fields("target excess delay", "exponent lowest highest keep")
 #: one cell: its own number (for its random draws), the load at its soma (nS), its threshold
@@ -52,8 +54,8 @@ class Wiring(NamedTuple):
     plan: Records  # (1,)
     stretches: Records
     beyond: Ints  # (stretch, contact) 1: the contact lies at or beyond the stretch
-    groups: Records
-    slot_node: Ints  # the node of each slot
+    groups: Records  # sorted by slot
+    slots: Records
     contacts: Records
     sites: Records
     learner_site: Ints  # learning inputs are sorted by site
@@ -86,7 +88,6 @@ class Log(NamedTuple):
     diameter: Floats  # (cell, reading, stretch) as a multiple
     cell_states: Floats  # (cell, reading, state)
     spike_step: Ints  # (cell, spike)
-    releases: Floats  # (cell, contact) total conductance released, nS
     ended: Records  # (cell,)
 
 

@@ -185,12 +185,15 @@ class Learner:
         return seen
 
     def _call(self, hook: str, known: Mapping[str, float]) -> Changes:
-        changes: Changes = getattr(self.rule, hook)(**{n: known[n] for n in self.hooks[hook]}) or {}
+        owner, given = f"{type(self.rule).__name__}.{hook}", {n: known[n] for n in self.hooks[hook]}
+        try:
+            changes: Changes = getattr(self.rule, hook)(**given) or {}
+        except (ArithmeticError, ValueError) as error:
+            raise RuleError(f"{owner}: {error} at {self.t:g} ms with {dict(known)}") from error
         for name, value in changes.items():
             if not math.isfinite(value):
                 raise RuleError(
-                    f"{type(self.rule).__name__}.{hook} changed {name} by {value} at {self.t:g} ms "
-                    f"with {dict(known)}"
+                    f"{owner} changed {name} by {value} at {self.t:g} ms with {dict(known)}"
                 )
         return changes
 

@@ -56,16 +56,12 @@ def present(
         A rule that reads spikes; shapes or probabilities that do not fit.
     """
     rates = np.asarray(patterns, dtype=float)
-    chance = (
-        np.full(len(rates), 1 / len(rates))
-        if probabilities is None
-        else np.asarray(probabilities, float)
-    )
-    _check(rule, rates, chance, order)
+    _check(rule, rates, order, every)
+    chance = _chance(len(rates), probabilities)
     learner = Learner(rule, rates.shape[1])
     name = next(iter(rule.weights))
     if start is not None:
-        learner.per_input[name][:] = np.asarray(start, dtype=float)
+        learner.per_input[name][:] = _start(start, rates.shape[1])
     draw = np.random.default_rng(seed)
     window = float(getattr(rule, "window", 1.0))
     kept = [_snapshot(learner, name, rates)]
@@ -120,19 +116,35 @@ def _snapshot(learner: Learner, name: str, rates: Array) -> dict[str, Array | fl
     return {"weight": weights, "response": rates @ weights, **learner.per_cell}
 
 
-def _check(rule: Rule, rates: Array, chance: Array, order: str) -> None:
+def _chance(patterns: int, probabilities: ArrayLike | None) -> Array:
+    if probabilities is None:
+        return np.full(patterns, 1 / patterns)
+    chance = np.asarray(probabilities, dtype=float)
+    if chance.shape != (patterns,) or not (chance >= 0).all() or abs(chance.sum() - 1) > 1e-9:
+        raise Misfit(
+            "probabilities", got=str(chance), expected=f"{patterns} numbers >= 0 that sum to 1"
+        )
+    return chance
+
+
+def _start(start: ArrayLike, inputs: int) -> Array:
+    weights = np.asarray(start, dtype=float)
+    if weights.shape != (inputs,) or not np.isfinite(weights).all():
+        raise Misfit("start", got=str(weights), expected=f"{inputs} finite weights, one per input")
+    return weights
+
+
+def _check(rule: Rule, rates: Array, order: str, every: int) -> None:
     who = type(rule).__name__
     if rule.reads != "rates":
         raise Misfit(
             f"{who} on patterns", got="a rule that reads spikes", expected="one that reads rates"
         )
-    if rates.ndim != 2 or not np.isfinite(rates).all():
+    if rates.ndim != 2 or not rates.size or not np.isfinite(rates).all():
         raise Misfit(
             "patterns", got=f"an array of shape {rates.shape}", expected="finite (pattern, input)"
         )
-    if chance.shape != (len(rates),) or (chance < 0).any() or abs(chance.sum() - 1) > 1e-9:
-        raise Misfit(
-            "probabilities", got=str(chance), expected=f"{len(rates)} numbers >= 0 that sum to 1"
-        )
     if order not in ("mean", "random"):
         raise Misfit("order", got=repr(order), expected="'mean' or 'random'")
+    if every < 1:
+        raise Misfit("every", got=str(every), expected="1 or more presentations")

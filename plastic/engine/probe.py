@@ -9,25 +9,27 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 
 from plastic.engine.steps import (  # noqa: F401 - some are used by what is pasted
     CUT,
     DOUBLINGS,
     apply,
+    compiled,
     fade,
+    kept,
     membrane,
     padded,
     propagators,
     quanta,
     relaxed,
+    respond,
     stream_of,
     synaptic_half,
     trials_of,
 )
 
 
-@njit(nogil=True)
+@compiled
 def set_geometry(plan, stretches, multiple, load, conductance, leak, powers, work, half_over_c):
     """Fill the one-step propagator and half a step over the capacitance of every node."""
     membrane(stretches, multiple, plan.rm, plan.ri, load, conductance, leak)
@@ -36,10 +38,10 @@ def set_geometry(plan, stretches, multiple, load, conductance, leak, powers, wor
         half_over_c[node] = 0.5 * plan.dt / (plan.tau_m * leak[node])
 
 
-@njit(nogil=True)
+@compiled
 def run_probe(
     groups,
-    slot_node,
+    slots,
     single,
     half_over_c,
     open_step,
@@ -51,23 +53,26 @@ def run_probe(
     scratch,
     slow,
     fast,
-    total,
-    drive,
+    keep,
+    push,
 ):
     """Run one probe into `trace`; return the step at which the soma reaches threshold, or -1.
 
     With an infinite threshold there are no spikes. The probe ends when the soma spikes, or is well
-    past its last peak; what is left of the trace then stays at the last value.
+    past its last peak: an excitatory conductance can lift it once more when inhibition is over, so
+    each is given three of its time constants. What is left of the trace stays at the last value.
     """
     for node in range(v.shape[0]):
         v[node] = 0.0
     for g in range(slow.shape[0]):
         slow[g] = 0.0
         fast[g] = 0.0
-    for slot in range(total.shape[0]):
-        total[slot] = 0.0
-        drive[slot] = 0.0
-    o, top, fired, last = 0, 0.0, -1, open_step[open_step.shape[0] - 1]
+    stale = True
+    o, top, fired, lifted = 0, 0.0, -1, open_step[open_step.shape[0] - 1] + 50.0
+    for k in range(open_step.shape[0]):
+        if groups[open_group[k]].reversal > 0.0 and amount[k] > 0.0:
+            span = -3.0 / math.log(groups[open_group[k]].keep_decay)
+            lifted = max(lifted, open_step[k] + span)
     enough = 0.9 if threshold < 1e300 else 0.45
     step = 0
     while step < trace.shape[0]:
@@ -76,7 +81,7 @@ def run_probe(
             fired = step
             break
         top = max(top, v[0])
-        if step > last + 50 and v[0] < enough * top:
+        if step > lifted and v[0] < enough * top:
             break
         while o < open_step.shape[0] and open_step[o] == step:
             g = open_group[o]
@@ -84,21 +89,23 @@ def run_probe(
             slow[g] += scaled
             if groups[g].keep_rise > 0.0:
                 fast[g] += scaled
-            else:
-                total[groups[g].slot] += scaled
-                drive[groups[g].slot] += scaled * groups[g].reversal
             o += 1
-        synaptic_half(v, slot_node, total, drive, half_over_c)
+            stale = True
+        if stale:
+            respond(groups, slots, half_over_c, slow, fast, keep, push)
+            stale = False
+        synaptic_half(v, slots, keep, push)
         apply(single, v, scratch)
-        _open = fade(groups, slow, fast, total, drive)
-        synaptic_half(v, slot_node, total, drive, half_over_c)
+        _open = fade(groups, slow, fast)
+        respond(groups, slots, half_over_c, slow, fast, keep, push)
+        synaptic_half(v, slots, keep, push)
         step += 1
     for rest in range(step, trace.shape[0]):
         trace[rest] = v[0]
     return fired
 
 
-@njit(nogil=True)
+@compiled
 def crossing(trace, level, start, stop):
     """Return the step, interpolated, at which the trace crosses a level from start towards stop."""
     direction = 1 if stop > start else -1
@@ -111,7 +118,7 @@ def crossing(trace, level, start, stop):
     return math.nan
 
 
-@njit(nogil=True)
+@compiled
 def shape_of(trace, dt, out):
     """Write peak (mV), time of the peak, 20-80 % rise and half-width (ms) of a trace."""
     peak = 0
@@ -131,9 +138,9 @@ def shape_of(trace, dt, out):
         out[3] = dt * (down - crossing(trace, 0.5 * height, peak, 0))
 
 
-@njit(nogil=True)
+@compiled
 def run_shapes(
-    plans, stretches, groups, slot_node, loads, multiples, step, group, amounts, length, out
+    plans, stretches, groups, slots, loads, multiples, step, group, amounts, length, out
 ):
     """Fill out (cell, geometry, probe, 4) with EPSP shapes; amounts (cell, probe, opening), nS."""
     plan = plans[0]
@@ -142,7 +149,7 @@ def run_shapes(
     conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
     work, trace = np.zeros((3, size, size)), np.zeros(length)
     slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
+    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
     single = powers[0]
     for c in range(loads.shape[0]):
         for m in range(multiples.shape[0]):
@@ -160,7 +167,7 @@ def run_shapes(
             for k in range(amounts.shape[1]):
                 run_probe(
                     groups,
-                    slot_node,
+                    slots,
                     single,
                     half_over_c,
                     step,
@@ -172,18 +179,18 @@ def run_shapes(
                     scratch,
                     slow,
                     fast,
-                    total,
-                    drive,
+                    keep,
+                    push,
                 )
                 shape_of(trace, plan.dt, out[c, m, k])
 
 
-@njit(nogil=True)
+@compiled
 def run_thresholds(
     plans,
     stretches,
     groups,
-    slot_node,
+    slots,
     loads,
     thresholds,
     multiples,
@@ -208,7 +215,7 @@ def run_thresholds(
     conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
     work, trace = np.zeros((3, size, size)), np.zeros(length)
     slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
+    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
     now = np.zeros(step.shape[0])
     single = powers[0]
     for c in range(loads.shape[0]):
@@ -225,6 +232,9 @@ def run_thresholds(
                 half_over_c,
             )
             for a in range(added_amounts.shape[0]):
+                if a > 0 and out[c, m, a - 1] == 0.0:
+                    out[c, m, a] = 0.0  # the added conductance alone was enough
+                    continue
                 low, high = 0.0, largest
                 for turn in range(26):
                     # the two ends first, then bisection of the logarithm
@@ -237,7 +247,7 @@ def run_thresholds(
                         now[o] = amounts[c, o] + own[o] * middle + added[o] * added_amounts[a]
                     fired = run_probe(
                         groups,
-                        slot_node,
+                        slots,
                         single,
                         half_over_c,
                         step,
@@ -249,8 +259,8 @@ def run_thresholds(
                         scratch,
                         slow,
                         fast,
-                        total,
-                        drive,
+                        keep,
+                        push,
                     )
                     if fired >= 0:
                         high = middle
@@ -263,12 +273,12 @@ def run_thresholds(
                 out[c, m, a] = high if high < largest or fired >= 0 else math.inf
 
 
-@njit(nogil=True)
+@compiled
 def run_chances(
     plans,
     stretches,
     groups,
-    slot_node,
+    slots,
     numbers,
     loads,
     thresholds,
@@ -293,7 +303,7 @@ def run_chances(
     conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
     work, trace = np.zeros((3, size, size)), np.zeros(length)
     slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
+    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
     now = np.zeros(step.shape[0])
     single = powers[0]
     for c in range(loads.shape[0]):
@@ -321,7 +331,7 @@ def run_chances(
                     now[o] = amount
                 fired = run_probe(
                     groups,
-                    slot_node,
+                    slots,
                     single,
                     half_over_c,
                     step,
@@ -333,14 +343,14 @@ def run_chances(
                     scratch,
                     slow,
                     fast,
-                    total,
-                    drive,
+                    keep,
+                    push,
                 )
                 fires += 1 if fired >= 0 else 0
             out[c, r] = fires / trials
 
 
-@njit(nogil=True)
+@compiled
 def count_chances(sites, probability, out):
     """Fill out[k] with the chance of k quanta: binomial, a fractional site counting by chance."""
     whole = int(sites)
@@ -349,17 +359,28 @@ def count_chances(sites, probability, out):
         out[k] = 0.0
     if probability >= 1.0:
         out[whole] = 1.0
-    else:
-        chance = (1.0 - probability) ** whole
-        for k in range(whole + 1):
-            out[k] = chance
-            chance *= (whole - k) / (k + 1.0) * probability / (1.0 - probability)
+    elif probability <= 0.0:
+        out[0] = 1.0
+    else:  # from the mode outwards: the chance of no quantum at all may be no number any more
+        mode = min(int((whole + 1) * probability), whole)
+        odds = probability / (1.0 - probability)
+        out[mode] = math.exp(
+            math.lgamma(whole + 1.0)
+            - math.lgamma(mode + 1.0)
+            - math.lgamma(whole - mode + 1.0)
+            + mode * math.log(probability)
+            + (whole - mode) * math.log1p(-probability)
+        )
+        for k in range(mode, whole):
+            out[k + 1] = out[k] * (whole - k) / (k + 1.0) * odds
+        for k in range(mode, 0, -1):
+            out[k - 1] = out[k] * k / (whole - k + 1.0) / odds
     for k in range(out.shape[0] - 1, 0, -1):
         out[k] = out[k] * (1.0 - fraction) + out[k - 1] * fraction
     out[0] *= 1.0 - fraction
 
 
-@njit(nogil=True)
+@compiled
 def tail_of(goal, chances, count, q, cv):
     """Return the chance that the summed conductance of the quanta reaches `goal` > 0."""
     total = 0.0
@@ -373,7 +394,67 @@ def tail_of(goal, chances, count, q, cv):
     return total
 
 
-@njit(nogil=True)
+@compiled
+def fill_tails(release, cv, chances, tails):
+    """Fill tails with the chance that one contact reaches each of even steps of conductance.
+
+    Return the step (nS). Without quantal variance the steps are quanta, so that nothing is lost.
+    """
+    sites, q = release[0], release[2]
+    count = int(sites) + 2
+    count_chances(sites, release[1], chances)
+    step = q
+    if cv > 0.0:
+        step = q * (sites + 8.0 * cv * math.sqrt(sites)) / (tails.shape[0] - 1.0)
+    for i in range(tails.shape[0]):
+        if cv > 0.0:
+            tails[i] = tail_of(i * step, chances, count, q, cv)
+        else:
+            tails[i] = 0.0
+            for k in range(max(i, 1), count):
+                tails[i] += chances[k]
+    return step
+
+
+@compiled
+def chance_of(goal, tails, step, cv):
+    """Return the chance that one contact reaches `goal`, from its tails."""
+    if goal <= 0.0:
+        return 1.0
+    if step <= 0.0 or goal > step * (tails.shape[0] - 1.0):
+        return 0.0
+    at = goal / step
+    if cv == 0.0:
+        return tails[math.ceil(at * (1.0 - 1e-12))]
+    i = min(int(at), tails.shape[0] - 2)
+    return tails[i] + (at - i) * (tails[i + 1] - tails[i])
+
+
+@compiled
+def goal_beside(g, grid, goals):
+    """Return the own conductance needed beside g nS of the other, between nodes of a table.
+
+    Linear in the logarithm; in the inverse next to a node where no conductance is enough, and in
+    itself next to one where none is needed.
+    """
+    low, high = 0, grid.shape[0] - 1
+    while high - low > 1:
+        middle = (low + high) // 2
+        if grid[middle] <= g:
+            low = middle
+        else:
+            high = middle
+    along = min((g - grid[low]) / (grid[high] - grid[low]), 1.0)
+    if goals[high] > 1e300:
+        return math.inf
+    if goals[high] == 0.0:
+        return goals[low] * (1.0 - along) if along < 1.0 else 0.0
+    if goals[low] > 1e300:
+        return goals[high] / along if along > 0.0 else math.inf
+    return goals[low] * (goals[high] / goals[low]) ** along
+
+
+@compiled
 def run_two_contacts(own, extra, cv, grid, goals, nodes, weights, out):
     """Fill out (cell, reading) with the chance that two contacts together fire the cell.
 
@@ -384,26 +465,19 @@ def run_two_contacts(own, extra, cv, grid, goals, nodes, weights, out):
     for c in range(own.shape[0]):
         for r in range(own.shape[1]):
             most = max(most, max(own[c, r, 0], extra[c, r, 0]))
-    size, points = int(most) + 2, 257
-    first, second, tails = np.zeros(size), np.zeros(size), np.zeros(points)
+    size = int(most) + 2
+    first, second = np.zeros(size), np.zeros(size)
+    tails, step = np.zeros(257 if cv > 0.0 else size), 0.0
+    known = np.zeros(3)
     for c in range(own.shape[0]):
-        farthest = 0.0
-        for a in range(grid.shape[0]):
-            if goals[c, a] < 1e300:
-                farthest = max(farthest, goals[c, a])
-        known = np.full(3, -1.0)
         for r in range(own.shape[1]):
-            same = True
+            same = c + r > 0
             for j in range(3):
                 same = same and own[c, r, j] == known[j]
-            if not same and farthest > 0.0:
+            if not same:
                 for j in range(3):
                     known[j] = own[c, r, j]
-                count_chances(own[c, r, 0], own[c, r, 1], first)
-                count = int(own[c, r, 0]) + 2
-                for i in range(points):
-                    goal = farthest * i / (points - 1.0)
-                    tails[i] = 1.0 if i == 0 else tail_of(goal, first, count, own[c, r, 2], cv)
+                step = fill_tails(known, cv, first, tails)
             count_chances(extra[c, r, 0], extra[c, r, 1], second)
             total = 0.0
             for k in range(int(extra[c, r, 0]) + 2):
@@ -411,22 +485,12 @@ def run_two_contacts(own, extra, cv, grid, goals, nodes, weights, out):
                     continue
                 for z in range(nodes.shape[0]):
                     g = max(extra[c, r, 2] * (k + cv * math.sqrt(float(k)) * nodes[z]), 0.0)
-                    a = 0
-                    while a < grid.shape[0] - 2 and grid[a + 1] <= g:
-                        a += 1
-                    along = min((g - grid[a]) / (grid[a + 1] - grid[a]), 1.0)
-                    low, high = goals[c, a], goals[c, a + 1]
-                    goal = low if low == high else low + along * (high - low)
-                    if math.isnan(goal) or goal > 1e300:
-                        continue
-                    at = goal / farthest * (points - 1.0) if farthest > 0.0 else 0.0
-                    i = min(int(at), points - 2)
-                    chance = 1.0 if goal <= 0.0 else tails[i] + (at - i) * (tails[i + 1] - tails[i])
-                    total += second[k] * weights[z] * chance
+                    goal = goal_beside(g, grid, goals[c])
+                    total += second[k] * weights[z] * chance_of(goal, tails, step, cv)
             out[c, r] = min(total, 1.0)
 
 
-@njit(nogil=True)
+@compiled
 def run_tails(goals, release, cv, out):
     """Fill out (cell, reading) with the chance that one contact reaches goals (cell, reading)."""
     most = 0.0

@@ -22,8 +22,8 @@ from plastic.engine.kernel import probes
 from plastic.engine.layout import Cells, Floats, Ints, Wiring
 from plastic.routes._interface import Mixture, Route
 
-#: nodes of the tables: own conductance, added conductance, width
-OWN_NODES, ADDED_NODES, WIDTH_NODES = 32, 17, 17
+#: nodes of the tables: own conductance; width or added conductance, of an EPSP and of a threshold
+OWN_NODES, ACROSS_NODES, GOAL_NODES = 32, 17, 129
 #: nS; the tables are even in log(1 + g / SCALE)
 SCALE = 1.0
 #: nS; no conductance up to this one fires the cell: out of reach
@@ -192,9 +192,14 @@ class Reader:
     wiring : Wiring
         Of any arm of the study: only what all arms share is read.
     cells : Cells
+    top : float, optional
+        The largest conductance of the tables, nS; by default forty times the largest of these
+        cells. Given, a cell reads the same bits whatever the cells beside it.
     """
 
-    def __init__(self, scene: Scene, wiring: Wiring, cells: Cells) -> None:
+    def __init__(
+        self, scene: Scene, wiring: Wiring, cells: Cells, top: float | None = None
+    ) -> None:
         self.scene, self.wiring, self.cells = scene, wiring, cells
         self.loads = np.ascontiguousarray(cells.cells["load"])
         self.thresholds = np.ascontiguousarray(cells.cells["threshold"])
@@ -202,7 +207,8 @@ class Reader:
         self.quantum = cells.release["quantum"] / (1.0 + cells.release["quantum"] * neck)
         base = cells.release["sites"] * cells.release["probability"] * self.quantum
         own = [k for k, c in enumerate(scene.contacts) if c.input not in scene.inhibitory]
-        self.top = 40.0 * float(base[:, own].max()) if own else 1.0
+        widest = 40.0 * float(base[:, own].max()) if own else 1.0
+        self.top = widest if top is None else top
         self.added_top = self.top / 4
         self._tables: dict[tuple[object, ...], tuple[Floats, ...]] = {}
         self._lock = threading.Lock()
@@ -237,12 +243,13 @@ class Reader:
         rows.sort()
         columns = [np.array(column) for column in zip(*rows, strict=True)]
         steps, chosen = columns[0].astype(np.int64), columns[1].astype(np.int64)
+        steps -= steps[0]  # what the input drives may open before its own contacts do
         return Openings(chosen, steps, *(column.astype(float) for column in columns[2:]))
 
-    def premise(self, name: str, route: Mixture | None) -> str:
+    def premise(self, name: str, route: Mixture | None, *, inhibition: bool = True) -> str:
         """Return why the tables do not hold for firing by this input; empty when they hold."""
         contacts, wiring = self.scene.contacts, self.wiring
-        opened = self.openings(name)
+        opened = self.openings(name, inhibition=inhibition)
         for k in opened.contact[opened.fixed == 1]:
             release = self.cells.release[:, k]
             certain = (release["probability"] >= 1).all() and (release["sites"] % 1 == 0).all()
@@ -271,7 +278,7 @@ class Reader:
 
     # ---- tables
 
-    def _width_axis(self, route: Mixture) -> tuple[float, float, Floats]:
+    def _width_axis(self, route: Mixture, nodes: int) -> tuple[float, float, Floats]:
         """Return the range of the grown factor and the multiples (node, stretch) along it."""
         channel = next(c for c in route.channels.values() if c.target == "diameter")
         wiring = self.wiring
@@ -283,20 +290,20 @@ class Reader:
         reach = [(channel.highest * n - (n - k)) / k for n, k in zip(every, own, strict=True) if k]
         least = [(channel.lowest * n - (n - k)) / k for n, k in zip(every, own, strict=True) if k]
         low, high = max(min([*least, 1.0]), 0.0), max([*reach, 1.0 + 1e-6])
-        grown = np.linspace(low, high, WIDTH_NODES)[:, None]
+        grown = np.linspace(low, high, nodes)[:, None]
         mean = np.where(widens, (grown * own + (every - own)) / np.maximum(every, 1), 1.0)
         limited = np.where(widens, np.clip(mean, channel.lowest, channel.highest), 1.0)
         return low, high, np.ascontiguousarray(limited)
 
-    def _grid(self, name: str, route: Mixture | None) -> tuple[object, Floats, Floats]:
+    def _grid(self, name: str, route: Mixture | None, nodes: int) -> tuple[object, Floats, Floats]:
         """Return a key, the multiples (geometry, stretch) and the added conductances of a table."""
         varies, key = self._varies(name, route), None
         multiples, extra = np.ones((1, len(self.wiring.stretches))), np.zeros(1)
         if varies == "width" and route is not None:
             key = next(c for c in route.channels.values() if c.target == "diameter")
-            multiples = self._width_axis(route)[2]
+            multiples = self._width_axis(route, nodes)[2]
         if varies == "added":
-            extra = axis(self.added_top, ADDED_NODES)
+            extra = axis(self.added_top, nodes)
         return (varies, key), multiples, extra
 
     def _kept(
@@ -310,7 +317,7 @@ class Reader:
 
     def _shapes(self, name: str, route: Mixture | None, inhibition: bool) -> tuple[Floats, ...]:
         """Return tables of peak, rise and half-width, each (cell, across, own)."""
-        key, multiples, extra = self._grid(name, route)
+        key, multiples, extra = self._grid(name, route, ACROSS_NODES)
         wiring, opened = self.wiring, self.openings(name, inhibition=inhibition)
 
         def make() -> tuple[Floats, ...]:
@@ -326,7 +333,7 @@ class Reader:
                 wiring.plan,
                 wiring.stretches,
                 wiring.groups,
-                wiring.slot_node,
+                wiring.slots,
                 self.loads,
                 multiples,
                 opened.step,
@@ -344,7 +351,7 @@ class Reader:
 
     def _goals(self, name: str, route: Mixture | None, inhibition: bool) -> Floats:
         """Return the table of g*, nS, (cell, across)."""
-        key, multiples, extra = self._grid(name, route)
+        key, multiples, extra = self._grid(name, route, GOAL_NODES)
         wiring, opened = self.wiring, self.openings(name, inhibition=inhibition)
 
         def make() -> tuple[Floats, ...]:
@@ -353,7 +360,7 @@ class Reader:
                 wiring.plan,
                 wiring.stretches,
                 wiring.groups,
-                wiring.slot_node,
+                wiring.slots,
                 self.loads,
                 self.thresholds,
                 multiples,
@@ -383,22 +390,20 @@ class Reader:
 
     # ---- readings
 
-    def _across(self, name: str, route: Mixture | None, state: State) -> Floats | None:
+    def _across(self, name: str, route: Mixture | None, state: State, nodes: int) -> Floats | None:
         """Return the position of every reading on the table's second axis."""
         varies = self._varies(name, route)
         if varies == "added":
-            return position(
-                state.conductance(self.added_contacts(name)), self.added_top, ADDED_NODES
-            )
+            return position(state.conductance(self.added_contacts(name)), self.added_top, nodes)
         if varies != "width" or route is None:
             return None
-        low, high, limited = self._width_axis(route)
+        low, high, limited = self._width_axis(route, nodes)
         # the stretch that is limited last tells the grown factor apart over the whole range
         widest = int(np.argmax([len(np.unique(limited[:, s])) for s in range(limited.shape[1])]))
-        grown = np.linspace(low, high, WIDTH_NODES)
+        grown = np.linspace(low, high, nodes)
         rising, index = np.unique(limited[:, widest], return_index=True)
         at = np.interp(state.width[:, :, widest], rising, grown[index])
-        return (at - low) / (high - low) * (WIDTH_NODES - 1)
+        return (at - low) / (high - low) * (nodes - 1)
 
     def shape(
         self, name: str, route: Mixture | None, state: State, *, inhibition: bool = True
@@ -408,7 +413,7 @@ class Reader:
             return self._direct_shape(name, state, inhibition)
         peak, rise, half = self._shapes(name, route, inhibition)
         along = position(state.conductance(self.own_contacts(name)), self.top, OWN_NODES)
-        across = self._across(name, route, state)
+        across = self._across(name, route, state, ACROSS_NODES)
         return Shape(
             interpolate(peak, along, across),
             interpolate(rise, along, across),
@@ -428,7 +433,7 @@ class Reader:
                     wiring.plan,
                     wiring.stretches,
                     wiring.groups,
-                    wiring.slot_node,
+                    wiring.slots,
                     self.loads[c : c + 1],
                     np.ascontiguousarray(state.width[c, r][None]),
                     opened.step,
@@ -444,7 +449,7 @@ class Reader:
     ) -> Floats:
         """Return the own conductance (nS) that fires the cell at each reading, inf out of reach."""
         goals = self._goals(name, route, inhibition)
-        across = self._across(name, route, state)
+        across = self._across(name, route, state, GOAL_NODES)
         if across is None:
             return np.repeat(goals[:, :1], state.width.shape[1], axis=1)
         return _between(goals, across)
@@ -453,8 +458,8 @@ class Reader:
         self, name: str, route: Mixture | None, state: State, *, inhibition: bool = True
     ) -> Floats:
         """Return the probability that the input alone fires the cell, (cell, reading)."""
-        if self.premise(name, route) and inhibition:
-            return self.simulated(name, state)
+        if self.premise(name, route, inhibition=inhibition):
+            return self.simulated(name, state, inhibition=inhibition)
         own = self.own_contacts(name)
         mine = _release(state, own[0])
         if self.scene.deterministic:
@@ -464,12 +469,12 @@ class Reader:
         out = np.zeros(mine.shape[:2])
         if self._varies(name, route) == "added":
             goals = self._goals(name, route, inhibition)
-            roots, weights = np.polynomial.hermite_e.hermegauss(5)
+            roots, weights = np.polynomial.hermite_e.hermegauss(9)
             probes().run_two_contacts(
                 mine,
                 _release(state, self.added_contacts(name)[0]),
                 cv,
-                axis(self.added_top, ADDED_NODES),
+                axis(self.added_top, GOAL_NODES),
                 goals,
                 roots,
                 weights / weights.sum(),
@@ -480,16 +485,22 @@ class Reader:
         probes().run_tails(goal, mine, cv, out)
         return out
 
-    def simulated(self, name: str, state: State, trials: int = TRIALS) -> Floats:
+    def simulated(
+        self, name: str, state: State, trials: int = TRIALS, *, inhibition: bool = True
+    ) -> Floats:
         """Return the share of simulated stimuli that fire the cell, (cell, reading)."""
-        wiring, opened = self.wiring, self.openings(name)
+        wiring, opened = self.wiring, self.openings(name, inhibition=inhibition)
         release = np.stack([_release(state, int(k)) for k in opened.contact], axis=2)
+        cv = wiring.contacts["cv"][opened.contact].copy()
+        if self.scene.deterministic:  # one certain quantum of the mean
+            release[..., 2] *= release[..., 0] * release[..., 1]
+            release[..., :2], cv[:], trials = 1.0, 0.0, 1
         out = np.zeros(release.shape[:2])
         probes().run_chances(
             wiring.plan,
             wiring.stretches,
             wiring.groups,
-            wiring.slot_node,
+            wiring.slots,
             np.ascontiguousarray(self.cells.cells["number"]),
             self.loads,
             self.thresholds,
@@ -498,7 +509,7 @@ class Reader:
             wiring.contacts["group"][opened.contact].copy(),
             opened.contact,
             np.ascontiguousarray(release),
-            wiring.contacts["cv"][opened.contact].copy(),
+            cv,
             trials,
             round(SPIKE_LENGTH / self.scene.dt),
             out,
@@ -513,7 +524,7 @@ class Reader:
             wiring.plan,
             wiring.stretches,
             wiring.groups,
-            wiring.slot_node,
+            wiring.slots,
             self.loads,
             np.ones((1, len(wiring.stretches))),
             np.zeros(1, np.int64),
@@ -532,19 +543,28 @@ def _release(state: State, contact: int) -> Floats:
 
 
 def _between(goals: Floats, across: Floats) -> Floats:
-    """Return thresholds between nodes, linear in their inverse so that "out of reach" is zero."""
-    inverse = 1.0 / np.maximum(goals, 1e-12)
+    """Return thresholds between nodes, as `goal_beside` of the compiled readings does.
+
+    Linear in the logarithm; in the inverse next to "out of reach", in itself next to nothing.
+    """
     first = np.clip(np.floor(across).astype(np.int64), 0, goals.shape[1] - 2)
     cell = np.arange(goals.shape[0])[:, None]
-    part = across - first
-    mixed = inverse[cell, first] * (1 - part) + inverse[cell, first + 1] * part
-    with np.errstate(divide="ignore"):
-        return np.asarray(np.where(mixed > 1 / LARGEST, 1.0 / mixed, np.inf), dtype=float)
+    low, high, part = goals[cell, first], goals[cell, first + 1], across - first
+    known = np.isfinite(low) & np.isfinite(high)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        far = 1.0 / ((1 - part) / low + part / high)
+        near = np.where(
+            (low > 0) & (high > 0), low * (high / low) ** part, low + part * (high - low)
+        )
+    return np.asarray(np.where(known, near, far), dtype=float)
 
 
 def _filled(values: Floats) -> Floats:
-    """Replace what has no value (no EPSP at the lowest conductance) by the next node's."""
+    """Replace what has no value (no EPSP at the lowest conductance) by the next node's.
+
+    What has none at any higher node either (an EPSP longer than `EPSP_LENGTH`) stays without.
+    """
     for node in range(values.shape[2] - 2, -1, -1):
         missing = np.isnan(values[:, :, node])
         values[:, :, node][missing] = values[:, :, node + 1][missing]
-    return np.nan_to_num(values)
+    return values

@@ -20,8 +20,13 @@ FRACTION, NORMAL_A, NORMAL_B, REFILL = 2045, 2046, 2047, 2048
 DOUBLINGS = 26  # powers of two of one step that a jump may use
 CUT = 1e-6  # nS: a conductance below it is over
 
+#: every compiled function: no lock held, and x/0 is inf or nan (runs end with a check) as in numpy
+compiled = njit(nogil=True, error_model="numpy")
+#: entry points of generated modules, which numba keeps on disk
+kept = njit(nogil=True, error_model="numpy", cache=True)
 
-@njit(nogil=True)
+
+@compiled
 def mix(z):
     """Return the 64-bit hash of z."""
     z = (z ^ (z >> R30)) * MUL_A
@@ -29,21 +34,21 @@ def mix(z):
     return z ^ (z >> R31)
 
 
-@njit(nogil=True)
+@compiled
 def stream_of(seed, cell, channel):
     """Return the key of the draws of one channel (a contact) of one cell."""
     inner = mix(np.uint64(seed) + GOLDEN) + GOLDEN * np.uint64(cell + 1)
     return mix(mix(inner) + GOLDEN * np.uint64(channel + 1))
 
 
-@njit(nogil=True)
+@compiled
 def uniform(stream, ordinal, part):
     """Return draw (ordinal, part) of a stream, in [0, 1)."""
     counter = np.uint64(ordinal) * PARTS + np.uint64(part)
     return float(mix(stream + GOLDEN * (counter + ONE)) >> R11) * 2.0**-53
 
 
-@njit(nogil=True)
+@compiled
 def binomial(stream, ordinal, trials, probability, part):
     """Return the number of successes in `trials` draws of one event."""
     count = 0
@@ -53,14 +58,14 @@ def binomial(stream, ordinal, trials, probability, part):
     return count
 
 
-@njit(nogil=True)
+@compiled
 def normal(stream, ordinal):
     """Return the standard normal draw of one event (Box & Muller)."""
     radius = math.sqrt(-2.0 * math.log(1.0 - uniform(stream, ordinal, NORMAL_A)))
     return radius * math.cos(2.0 * math.pi * uniform(stream, ordinal, NORMAL_B))
 
 
-@njit(nogil=True)
+@compiled
 def quanta(stream, ordinal, available, probability, q, cv):
     """Return (number of quanta, their conductance): binomial, with Gaussian quantal variance."""
     count = available
@@ -74,7 +79,7 @@ def quanta(stream, ordinal, available, probability, q, cv):
     return count, max(total, 0.0)
 
 
-@njit(nogil=True)
+@compiled
 def trials_of(stream, ordinal, sites):
     """Return whole sites for this event: a fractional site exists with a fractional chance."""
     whole = int(sites)
@@ -84,17 +89,17 @@ def trials_of(stream, ordinal, sites):
     return whole
 
 
-@njit(nogil=True)
+@compiled
 def relaxed(z):
-    """Return (1 - exp(-z)) / z; below 0.3 by the [4/4] Pade form of exp, exact to 1e-12."""
-    if z < 0.3:
+    """Return (1 - exp(-z)) / z; below 0.25 by the [4/4] Pade form of exp, exact to 1e-12."""
+    if z < 0.25:
         square = z * z
         odd = 840.0 + 20.0 * square
         return 2.0 * odd / (1680.0 + square * (180.0 + square) + z * odd)
     return -math.expm1(-z) / z
 
 
-@njit(nogil=True)
+@compiled
 def product(a, b, out):
     """Write the matrix product a b into out."""
     n = a.shape[0]
@@ -106,7 +111,7 @@ def product(a, b, out):
             out[i, j] = total
 
 
-@njit(nogil=True)
+@compiled
 def membrane(stretches, multiple, rm, ri, load, conductance, leak):
     """Fill the conductance matrix (nS) and the leak (nS) of every node.
 
@@ -139,7 +144,7 @@ def membrane(stretches, multiple, rm, ri, load, conductance, leak):
         conductance[i, i] += leak[i]
 
 
-@njit(nogil=True)
+@compiled
 def propagators(conductance, leak, n, tau_m, dt, powers, work):
     """Fill powers[j] with the exact propagator of 2**j steps of the quiet membrane, transposed."""
     biggest = 0.0
@@ -179,7 +184,7 @@ def propagators(conductance, leak, n, tau_m, dt, powers, work):
         product(powers[j - 1], powers[j - 1], powers[j])
 
 
-@njit(nogil=True)
+@compiled
 def apply(turned, v, out):
     """Replace v by the product of a matrix, given transposed, and v; four rows at a time."""
     if v.shape[0] == 1:
@@ -200,13 +205,13 @@ def apply(turned, v, out):
             v[row] = out[row]
 
 
-@njit(nogil=True)
+@compiled
 def padded(n):
     """Return the length of node arrays: one, or the next multiple of four."""
     return 1 if n == 1 else (n + 3) // 4 * 4
 
 
-@njit(nogil=True)
+@compiled
 def jump(powers, steps, v, out):
     """Take `steps` quiet steps at once, exactly."""
     if steps >> powers.shape[0] > 0:
@@ -221,27 +226,39 @@ def jump(powers, steps, v, out):
         j += 1
 
 
-@njit(nogil=True)
-def synaptic_half(v, slot_node, total, drive, half_over_c):
-    """Let the open conductances act on their nodes for half a step (exact for constant g)."""
-    for slot in range(slot_node.shape[0]):
-        if total[slot] > 0.0:
-            node = slot_node[slot]
-            h = half_over_c[node]
-            v[node] += (drive[slot] - total[slot] * v[node]) * h * relaxed(total[slot] * h)
+@compiled
+def respond(groups, slots, half_over_c, slow, fast, keep, push):
+    """Set what the open conductances do in half a step, exactly for constant g: v -> keep v + push.
 
-
-@njit(nogil=True)
-def fade(groups, slow, fast, total, drive):
-    """Let conductances decay over one step; return whether any is still open.
-
-    Sums what is open at each slot: conductance (nS) and conductance times reversal (pA).
+    Does not depend on v, so that a processor can work it out while the membrane is being stepped.
     """
-    for slot in range(total.shape[0]):
-        total[slot] = 0.0
-        drive[slot] = 0.0
+    for slot in range(slots.shape[0]):
+        total = drive = 0.0
+        for g in range(slots[slot].first, slots[slot].last):
+            total += slow[g] - fast[g]
+            drive += (slow[g] - fast[g]) * groups[g].reversal
+        keep[slot], push[slot] = 1.0, 0.0
+        if total == 0.0:
+            continue
+        h = half_over_c[slots[slot].node]
+        share = h * relaxed(total * h)
+        keep[slot] = 1.0 - total * share
+        push[slot] = drive * share
+
+
+@compiled
+def synaptic_half(v, slots, keep, push):
+    """Let the open conductances act on their nodes for half a step."""
+    for slot in range(slots.shape[0]):
+        node = slots[slot].node
+        v[node] = keep[slot] * v[node] + push[slot]
+
+
+@compiled
+def fade(groups, slow, fast):
+    """Let conductances decay over one step; return whether any is still open."""
     remaining = False
-    for g in range(slow.shape[0]):
+    for g in range(groups.shape[0]):
         if slow[g] > 0.0:
             slow[g] *= groups[g].keep_decay
             fast[g] *= groups[g].keep_rise
@@ -250,12 +267,10 @@ def fade(groups, slow, fast, total, drive):
                 fast[g] = 0.0
             else:
                 remaining = True
-                total[groups[g].slot] += slow[g] - fast[g]
-                drive[groups[g].slot] += (slow[g] - fast[g]) * groups[g].reversal
     return remaining
 
 
-@njit(nogil=True)
+@compiled
 def highest_of(v):
     """Return the largest deviation from rest."""
     top = v[0]
@@ -264,16 +279,17 @@ def highest_of(v):
     return top
 
 
-@njit(nogil=True)
+@compiled
 def powered(factor, exponent, excess, lowest, highest):
     """Return the multiple of the base that a channel gives to a factor."""
-    if excess:
-        value = factor if exponent == 1.0 else factor**exponent
-        return min(max(value - 1.0, 0.0), highest)
     if exponent == 1.0:
         value = factor
+    elif exponent == 0.0:
+        value = 1.0
     elif factor <= 0.0:
         value = 0.0 if exponent > 0.0 else highest
     else:
         value = factor**exponent
+    if excess:
+        return min(max(value - 1.0, 0.0), highest)
     return min(max(value, lowest), highest)

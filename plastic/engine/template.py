@@ -25,22 +25,24 @@ from __future__ import annotations
 import math
 
 import numpy as np
-from numba import njit
 
 from plastic.engine.steps import (  # noqa: F401 - some are used by what is pasted
     CUT,
     DOUBLINGS,
     apply,
     binomial,
+    compiled,
     fade,
     highest_of,
     jump,
+    kept,
     membrane,
     padded,
     powered,
     propagators,
     quanta,
     relaxed,
+    respond,
     stream_of,
     synaptic_half,
     trials_of,
@@ -50,47 +52,53 @@ from plastic.engine.steps import REFILL as REFILL_PART
 # ---- the rule -----------------------------------------------------------------------------------
 RATES = False  # learns from rates counted over a window
 N_WEIGHTS, N_VARIABLES, N_CELL = 1, 1, 0
+N_PRE, N_POST = 0, 0  # traces
 PRE_ADDS = (True,)  # a trace of "pre" adds 1 at an event (False: is set to 1)
 POST_ADDS = (True,)
 HAS_FLOW, HAS_CELL_FLOW = False, False
 
 
-@njit(nogil=True)
+@compiled
 def add_on_pre(p, S, C, X, Y, fx, fy, i, site, t, D):
     """Add to D what on_pre changes of learner i."""
 
 
-@njit(nogil=True)
+@compiled
+def move_on_pre(p, C, X, Y, fx, fy, i, site, t, S):
+    """Change learner i at once by what on_pre says."""
+
+
+@compiled
 def add_on_post(p, S, C, X, Y, fx, fy, i, site, t, amplitude, D):
     """Add to D what on_post changes of learner i."""
 
 
-@njit(nogil=True)
+@compiled
 def add_on_presentation(p, S, C, i, t, pre_rate, post_rate, D):
     """Add to D what on_presentation changes of learner i."""
 
 
-@njit(nogil=True)
+@compiled
 def add_cell_on_post(p, C, Y, fy, t, DC):
     """Add to DC what cell_on_post changes."""
 
 
-@njit(nogil=True)
+@compiled
 def add_cell_on_presentation(p, C, t, post_rate, DC):
     """Add to DC what cell_on_presentation changes."""
 
 
-@njit(nogil=True)
+@compiled
 def add_flow(p, S, i, dt, D):
     """Add to D what flow changes of learner i."""
 
 
-@njit(nogil=True)
+@compiled
 def add_cell_flow(p, C, dt, DC):
     """Add to DC what cell_flow changes."""
 
 
-@njit(nogil=True)
+@compiled
 def factor_of(p, S, i):
     """Return the factor of learner i."""
     return 1.0
@@ -101,17 +109,23 @@ def factor_of(p, S, i):
 LARGEST_SCALE = 40.0  # e-folds of the scaled traces before t_ref moves up
 
 
-@njit(nogil=True)
+@compiled
+def bound(S, low, high, i):
+    """Keep the weights of learner i within their bounds."""
+    for row in range(N_WEIGHTS):
+        S[row, i] = min(max(S[row, i], low[row]), high[row, i])
+
+
+@compiled
 def settle(S, D, low, high, i):
     """Apply the changes of learner i, then its bounds."""
     for row in range(N_VARIABLES):
         S[row, i] += D[row, i]
         D[row, i] = 0.0
-    for row in range(N_WEIGHTS):
-        S[row, i] = min(max(S[row, i], low[row]), high[row, i])
+    bound(S, low, high, i)
 
 
-@njit(nogil=True)
+@compiled
 def flow_to(p, S, C, D, DC, low, high, dt):
     """Bring every input and the cell over `dt` ms of silence."""
     if HAS_FLOW:
@@ -125,7 +139,7 @@ def flow_to(p, S, C, D, DC, low, high, dt):
             DC[row] = 0.0
 
 
-@njit(nogil=True)
+@compiled
 def present(p, S, C, D, DC, low, high, t, counts, post_count, window):
     """Close a window (ms): its counts become rates (Hz) and are presented to the rule."""
     post_rate = post_count * 1000.0 / window
@@ -140,7 +154,7 @@ def present(p, S, C, D, DC, low, high, t, counts, post_count, window):
         DC[row] = 0.0
 
 
-@njit(nogil=True)
+@compiled
 def learn(p, S, C, X, Y, fx, fy, D, DC, low, high, t, pre, n_pre, arrived, site_first, site_of):
     """Apply one instant: presynaptic events `pre`, local spikes where `arrived[site]` > 0."""
     some_post = False
@@ -165,36 +179,36 @@ def learn(p, S, C, X, Y, fx, fy, D, DC, low, high, t, pre, n_pre, arrived, site_
             settle(S, D, low, high, pre[k])
 
 
-@njit(nogil=True)
+@compiled
 def traces_jump(X, Y, fx, fy, pre, n_pre, arrived):
     """Let the traces jump, after the changes of the instant."""
-    for row in range(X.shape[0]):
+    for row in range(N_PRE):
         unit = 1.0 / fx[row]
         for k in range(n_pre):
             X[row, pre[k]] = X[row, pre[k]] + unit if PRE_ADDS[row] else unit
-    for row in range(Y.shape[0]):
+    for row in range(N_POST):
         unit = 1.0 / fy[row]
         for site in range(arrived.shape[0]):
             if arrived[site] > 0.0:
                 Y[row, site] = Y[row, site] + unit if POST_ADDS[row] else unit
 
 
-@njit(nogil=True)
+@compiled
 def rescale(X, Y, taus_pre, taus_post, elapsed, fx, fy):
     """Move the reference time of the scaled traces up by `elapsed` ms."""
-    for row in range(X.shape[0]):
+    for row in range(N_PRE):
         shrink = math.exp(-elapsed / taus_pre[row])
         for i in range(X.shape[1]):
             X[row, i] *= shrink
         fx[row] = 1.0
-    for row in range(Y.shape[0]):
+    for row in range(N_POST):
         shrink = math.exp(-elapsed / taus_post[row])
         for site in range(Y.shape[1]):
             Y[row, site] *= shrink
         fy[row] = 1.0
 
 
-@njit(nogil=True)
+@compiled
 def factor_table(taus, dt):
     """Return exp(-k dt/tau) for k = low + 256 high as the product of two short tables."""
     table = np.empty((taus.shape[0], 2, 256))
@@ -205,7 +219,7 @@ def factor_table(taus, dt):
     return table
 
 
-@njit(nogil=True)
+@compiled
 def shortest_of(taus_pre, taus_post):
     """Return the shortest time constant of the traces, ms."""
     shortest = 1e12
@@ -216,7 +230,7 @@ def shortest_of(taus_pre, taus_post):
     return shortest
 
 
-@njit(nogil=True)
+@compiled
 def express(contacts, base, k, channels, expressed, i, now):
     """Set now[k] = (sites, probability, quantum) of a contact from the factors of its learner i."""
     n, u, q, neck, added = base[k].sites, base[k].probability, base[k].quantum, 1.0, 0.0
@@ -244,7 +258,7 @@ def express(contacts, base, k, channels, expressed, i, now):
     now[k, 2] = q / (1.0 + q * contacts[k].neck * neck * 1e-3)
 
 
-@njit(nogil=True)
+@compiled
 def express_all(contacts, base, channels, expressed, now):
     """Set the physical variables of every learning contact."""
     for k in range(contacts.shape[0]):
@@ -252,7 +266,7 @@ def express_all(contacts, base, channels, expressed, now):
             express(contacts, base, k, channels, expressed, contacts[k].learner, now)
 
 
-@njit(nogil=True)
+@compiled
 def widen(stretches, beyond, contacts, channels, expressed, multiple):
     """Set the diameter of every stretch on the path; return whether any moved by 1e-4."""
     moved = False
@@ -276,7 +290,7 @@ def widen(stretches, beyond, contacts, channels, expressed, multiple):
     return moved
 
 
-@njit(nogil=True)
+@compiled
 def tick_expression(p, S, channels, history, ticks, expressed):
     """Let each channel's expressed factor follow the factor of `delay` ticks ago."""
     depth = history.shape[0]
@@ -288,13 +302,13 @@ def tick_expression(p, S, channels, history, ticks, expressed):
             expressed[ch, i] = goal + (expressed[ch, i] - goal) * channels[ch].keep
 
 
-@njit(nogil=True)
+@compiled
 def release(contacts, k, deterministic, stream, ordinal, t, now, memory):
     """Return the conductance (nS) that contact k releases at its event, and move its dynamics.
 
     now[k] is (sites, probability, quantum), memory[k] (use, full, empties, time of the last
-    event). Deterministic: N u R q with the recursion u, R. Stochastic: sites empty and refill one
-    by one, so that the recursion is the mean.
+    event, number of events). Deterministic: N u R q with the recursion u, R. Stochastic: sites
+    empty and refill one by one, so that the recursion is the mean.
     """
     u = now[k, 1]
     if contacts[k].facilitation > 0.0:
@@ -320,7 +334,25 @@ def release(contacts, k, deterministic, stream, ordinal, t, now, memory):
     return amount
 
 
-@njit(nogil=True)
+@compiled
+def certain(contacts, base, channels, k, deterministic, immediate):
+    """Return what contact k always releases (nS) at its baseline quantum, or -1 when that varies.
+
+    Certain: whole sites that all release the same, without short-term dynamics; and at most the
+    quantum, in proportion to the factor, is what the route moves.
+    """
+    one, here = contacts[k], base[k]
+    if one.added == 1 or one.neck > 0.0 or one.recovery > 0.0 or one.facilitation > 0.0:
+        return -1.0
+    if one.learner >= 0 and channels.shape[0] > 0:
+        only = channels.shape[0] == 1 and channels[0].target == 1 and channels[0].exponent == 1.0
+        if not (immediate and only):
+            return -1.0
+    whole = here.probability == 1.0 and one.cv == 0.0 and here.sites == math.floor(here.sites)
+    return here.sites * here.probability * here.quantum if deterministic or whole else -1.0
+
+
+@compiled
 def rebuild(plan, stretches, multiple, load, conductance, leak, powers, work, half_over_c):
     """Set the propagators and half a step over the capacitance for the present diameters."""
     membrane(stretches, multiple, plan.rm, plan.ri, load, conductance, leak)
@@ -329,12 +361,12 @@ def rebuild(plan, stretches, multiple, load, conductance, leak, powers, work, ha
         half_over_c[node] = 0.5 * plan.dt / (plan.tau_m * leak[node])
 
 
-@njit(nogil=True)
+@compiled
 def run_cell(w, cells, log, c, stop):
     """Run one cell from the first step to the last; return False when stopped before the end."""
     plan, cell, ended = w.plan[0], cells.cells[c], log.ended[c]
     stretches, contacts, channels, groups = w.stretches, w.contacts, w.channels, w.groups
-    events, reading_step, sites, slot_node = w.events, w.reading_step, w.sites, w.slot_node
+    events, reading_step, sites, slots = w.events, w.reading_step, w.sites, w.slots
     base, high, low, p = cells.release[c], cells.high[c], w.low, cells.parameters[c]
     learner_site, site_first, taus_pre, taus_post = (
         w.learner_site,
@@ -342,7 +374,7 @@ def run_cell(w, cells, log, c, stop):
         w.taus_pre,
         w.taus_post,
     )
-    spike_step, releases = log.spike_step[c], log.releases[c]
+    spike_step = log.spike_step[c]
     n_learners, n_contacts, n_sites = learner_site.shape[0], contacts.shape[0], sites.shape[0]
     n_channels, n_events, n_readings = channels.shape[0], events.shape[0], reading_step.shape[0]
     dt, threshold, n_steps, tick = plan.dt, cell.threshold, plan.n_steps, plan.tick
@@ -355,7 +387,7 @@ def run_cell(w, cells, log, c, stop):
     powers, work = np.zeros((DOUBLINGS, size, size)), np.zeros((3, size, size))
     multiple = np.ones(stretches.shape[0])
     slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    total, drive = np.zeros(slot_node.shape[0]), np.zeros(slot_node.shape[0])
+    keep, push, stale = np.ones(slots.shape[0]), np.zeros(slots.shape[0]), False
     rebuild(plan, stretches, multiple, cell.load, conductance, leak, powers, work, half_over_c)
     single = powers[0]
 
@@ -366,7 +398,7 @@ def run_cell(w, cells, log, c, stop):
         for i in range(n_learners):
             S[row, i] = w.starts[row]
     X, Y = np.zeros((taus_pre.shape[0], n_learners)), np.zeros((taus_post.shape[0], n_sites))
-    fx, fy = np.ones(X.shape[0]), np.ones(Y.shape[0])
+    fx, fy, ux = np.ones(X.shape[0]), np.ones(Y.shape[0]), np.ones(X.shape[0])
     table_x, table_y = factor_table(taus_pre, dt), factor_table(taus_post, dt)
     longest_scale = int(min(LARGEST_SCALE * shortest_of(taus_pre, taus_post) / dt, 65535.0))
     reference, flowed = 0, 0
@@ -385,12 +417,14 @@ def run_cell(w, cells, log, c, stop):
         now[k, 2] = base[k].quantum / (1.0 + base[k].quantum * contacts[k].neck * 1e-3)
     ticks, next_tick = 0, tick if tick > 0 else n_steps + 1
 
-    # release: use, full, empties, time of the last event
-    streams, memory = np.empty(n_contacts, np.uint64), np.zeros((n_contacts, 4))
+    # release: use, full, empties, time of the last event, number of events
+    streams, memory = np.empty(n_contacts, np.uint64), np.zeros((n_contacts, 5))
+    sure, immediate = np.empty(n_contacts), tick == 0 and n_channels > 0
     for k in range(n_contacts):
         streams[k] = stream_of(plan.seed, cell.number, k)
         memory[k, 1] = 1.0
         memory[k, 3] = -1e300
+        sure[k] = certain(contacts, base, channels, k, deterministic, tick == 0)
 
     # spikes on their way to the sites
     pending, amplitude = np.full((n_sites, 64), -1, np.int64), np.zeros((n_sites, 64))
@@ -442,16 +476,18 @@ def run_cell(w, cells, log, c, stop):
             present(p, S, C, D, DC, low, high, step * dt, counts, post_count, plan.window * dt)
             post_count, closes, flowed = 0.0, -1, step
         flows = (HAS_FLOW or HAS_CELL_FLOW) and closes < 0 and step > flowed
-        if flows and (due or next_reading == step):
+        if flows and (due or next_reading == step or (HAS_FLOW and next_tick <= step)):
             flow_to(p, S, C, D, DC, low, high, (step - flowed) * dt)
             flowed = step
         if next_tick <= step:
+            moved = False
             while next_tick <= step:
                 tick_expression(p, S, channels, history, ticks, expressed)
+                moved |= widen(stretches, w.beyond, contacts, channels, expressed, multiple)
                 ticks += 1
                 next_tick += tick
             express_all(contacts, base, channels, expressed, now)
-            if widen(stretches, w.beyond, contacts, channels, expressed, multiple):
+            if moved:
                 rebuild(
                     plan,
                     stretches,
@@ -463,6 +499,7 @@ def run_cell(w, cells, log, c, stop):
                     work,
                     half_over_c,
                 )
+                stale = True
         while next_reading == step:
             for i in range(n_learners):
                 for row in range(N_VARIABLES):
@@ -480,65 +517,80 @@ def run_cell(w, cells, log, c, stop):
             next_reading = reading_step[r] if r < n_readings else n_steps + 1
 
         if due:
-            # 3. events open conductances
             if stop[0] != 0:
                 return False
-            n_pre = 0
-            while next_event == step:
-                k, i = events[e].contact, events[e].learner
-                if k >= 0:
-                    j = contacts[k].learner
-                    if tick == 0 and n_channels > 0 and j >= 0:
-                        for ch in range(n_channels):
-                            expressed[ch, j] = factor_of(p, S, j)
-                        express(contacts, base, k, channels, expressed, j, now)
-                    if now[k, 0] > 0.0:
-                        amount = release(
-                            contacts,
-                            k,
-                            deterministic,
-                            streams[k],
-                            events[e].ordinal,
-                            step * dt,
-                            now,
-                            memory,
-                        )
-                        g = contacts[k].group
-                        scaled = amount * groups[g].norm
-                        slow[g] += scaled
-                        if groups[g].keep_rise > 0.0:
-                            fast[g] += scaled  # a dual exponential starts at zero
-                        else:
-                            total[groups[g].slot] += scaled
-                            drive[groups[g].slot] += scaled * groups[g].reversal
-                        some_open = some_open or amount > 0.0
-                        releases[k] += amount
-                if i >= 0:
-                    pre[n_pre] = i
-                    n_pre += 1
-                e += 1
-                next_event = events[e].step if e < n_events else n_steps + 1
-            # 4. the rule learns
-            if not some_arrived:
-                for site in range(n_sites):
-                    arrived[site] = 0.0
-            if RATES:
-                if closes < 0 and (n_pre > 0 or arrived[0] > 0.0):
-                    closes = step + plan.window
-                for k in range(n_pre):
-                    counts[pre[k]] += 1.0
-                if arrived[0] > 0.0:
-                    post_count += 1.0
-            elif n_pre > 0 or some_arrived:
+            if not RATES:
                 gap = step - reference
                 if gap > longest_scale:
                     rescale(X, Y, taus_pre, taus_post, gap * dt, fx, fy)
                     reference = step
+                    for row in range(N_PRE):
+                        ux[row] = 1.0
                 else:
-                    for row in range(X.shape[0]):
+                    for row in range(N_PRE):
                         fx[row] = table_x[row, 0, gap & 255] * table_x[row, 1, gap >> 8]
-                    for row in range(Y.shape[0]):
+                        ux[row] = 1.0 / fx[row]
+                    for row in range(N_POST):
                         fy[row] = table_y[row, 0, gap & 255] * table_y[row, 1, gap >> 8]
+            # 3. events open conductances; 4. their learners learn, those of the instant's last
+            # event at once, unless a spike arrives: then all changes wait for each other
+            n_pre = 0
+            while next_event == step:
+                k, i = events[e].contact, events[e].learner
+                if k >= 0:
+                    j, amount = contacts[k].learner, sure[k]
+                    if amount >= 0.0:
+                        if immediate and j >= 0:
+                            amount *= min(
+                                max(factor_of(p, S, j), channels[0].lowest), channels[0].highest
+                            )
+                    else:
+                        if immediate and j >= 0:
+                            for ch in range(n_channels):
+                                expressed[ch, j] = factor_of(p, S, j)
+                            express(contacts, base, k, channels, expressed, j, now)
+                        amount, ordinal = 0.0, int(memory[k, 4])
+                        memory[k, 4] += 1.0
+                        if now[k, 0] > 0.0:
+                            amount = release(
+                                contacts,
+                                k,
+                                deterministic,
+                                streams[k],
+                                ordinal,
+                                step * dt,
+                                now,
+                                memory,
+                            )
+                    g = contacts[k].group
+                    scaled = amount * groups[g].norm
+                    slow[g] += scaled
+                    if groups[g].keep_rise > 0.0:
+                        fast[g] += scaled  # a dual exponential starts at zero
+                    else:
+                        stale = True
+                    some_open = some_open or amount > 0.0
+                if i >= 0:
+                    if RATES:
+                        if closes < 0:
+                            closes = step + plan.window
+                        counts[i] += 1.0
+                    elif some_arrived:
+                        pre[n_pre] = i
+                        n_pre += 1
+                    else:
+                        move_on_pre(p, C, X, Y, fx, fy, i, learner_site[i], step * dt, S)
+                        bound(S, low, high, i)
+                        for row in range(N_PRE):
+                            X[row, i] = X[row, i] + ux[row] if PRE_ADDS[row] else ux[row]
+                e += 1
+                next_event = events[e].step if e < n_events else n_steps + 1
+            if some_arrived and RATES:
+                if arrived[0] > 0.0:
+                    if closes < 0:
+                        closes = step + plan.window
+                    post_count += 1.0
+            elif some_arrived:
                 learn(
                     p,
                     S,
@@ -566,15 +618,27 @@ def run_cell(w, cells, log, c, stop):
         if not some_open and not clocked and step >= free and highest_of(v) < threshold:
             goal = min(min(n_steps, next_event), min(next_reading, next_arrival))
             if RATES and closes >= 0:
-                goal = min(goal, closes)
+                goal = min(goal, min(closes, next_tick))  # a tick reads what was before it
+            if HAS_FLOW:
+                goal = min(goal, next_tick)  # a tick reads what flowed up to it
             jump(powers, goal - step, v, scratch)
             step = goal
             continue
         if some_open:
-            synaptic_half(v, slot_node, total, drive, half_over_c)
-            apply(single, v, scratch)
-            some_open = fade(groups, slow, fast, total, drive)
-            synaptic_half(v, slot_node, total, drive, half_over_c)
+            if stale:
+                respond(groups, slots, half_over_c, slow, fast, keep, push)
+                stale = False
+            if size == 1:  # all but one product and one sum do not wait for v
+                first_keep, first_push = single[0, 0] * keep[0], single[0, 0] * push[0]
+                some_open = fade(groups, slow, fast)
+                respond(groups, slots, half_over_c, slow, fast, keep, push)
+                v[0] = keep[0] * first_keep * v[0] + (keep[0] * first_push + push[0])
+            else:
+                synaptic_half(v, slots, keep, push)
+                apply(single, v, scratch)
+                some_open = fade(groups, slow, fast)
+                respond(groups, slots, half_over_c, slow, fast, keep, push)
+                synaptic_half(v, slots, keep, push)
         else:
             apply(single, v, scratch)
         if step < free:
@@ -589,7 +653,7 @@ def run_cell(w, cells, log, c, stop):
     return True
 
 
-@njit(nogil=True)
+@compiled
 def run_cells(w, cells, log, stop):
     """Run every cell of a block; return how many were finished before `stop[0]` was set."""
     for c in range(cells.cells.shape[0]):
@@ -598,7 +662,7 @@ def run_cells(w, cells, log, stop):
     return cells.cells.shape[0]
 
 
-@njit(nogil=True)
+@compiled
 def run_imposed(
     p,
     starts,
@@ -669,9 +733,9 @@ def run_imposed(
                 rescale(X, Y, taus_pre, taus_post, gap, fx, fy)
                 reference = t
             else:
-                for row in range(X.shape[0]):
+                for row in range(N_PRE):
                     fx[row] = math.exp(-gap / taus_pre[row])
-                for row in range(Y.shape[0]):
+                for row in range(N_POST):
                     fy[row] = math.exp(-gap / taus_post[row])
             learn(
                 p,

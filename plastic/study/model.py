@@ -132,7 +132,7 @@ class Study(Part):
 
     title: Text = Field(description="a title in quotes")
     seed: Annotated[int, Count(0, 2**53)] = 1
-    cells: Annotated[int, Count(1, 1_000_000)] = 100
+    cells: Annotated[int, Count(1, 1_000_000_000)] = 100
     dt: Duration = 0.1
     deterministic: Flag = False
     cell: Cell = Field(description="a table [cell]")

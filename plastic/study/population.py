@@ -16,7 +16,7 @@ from plastic.engine import layout
 from plastic.engine.assembly import Contact, Drive, Receptor, Scene, ceiling, events_of, wire
 from plastic.engine.kernel import Numbers, numbers_of
 from plastic.engine.layout import Cells, table
-from plastic.engine.readings import OWN_NODES, Reader, axis
+from plastic.engine.readings import OWN_NODES, Reader, axis, interpolate, position
 from plastic.membrane.cable import conductances, input_resistance
 from plastic.membrane.tree import build_tree
 from plastic.routes import Mixture
@@ -30,6 +30,11 @@ Floats = NDArray[np.float64]
 LEAST_DRIVE = 2.0
 #: a bundle is never recruited beyond this multiple of its nominal sites
 MOST_RECRUITED = 8.0
+#: tables of EPSPs end at this multiple of the largest nominal bundle: ten times what a bundle can
+#: be recruited to. Nominal, so that no cell's tables depend on the cells beside it
+TABULATED = 10.0 * MOST_RECRUITED
+#: points per node at which such a table is inverted
+FINER = 12
 
 
 @dataclass(frozen=True)
@@ -38,6 +43,8 @@ class Population:
 
     load (nS), threshold (mV over rest), input_resistance (Mohm), amplitude : array, shape (cell,)
     sites, probability, highest, quantum : array, shape (cell, contact); quantum in nS
+    top : float
+        The conductance at which tables of EPSPs end, nS.
     short : dict of input to the number of cells whose baseline EPSP could not be recruited
     """
 
@@ -50,6 +57,7 @@ class Population:
     probability: Floats
     highest: Floats
     quantum: Floats
+    top: float
     short: dict[str, int]
 
     def base(self, chosen: slice = slice(None)) -> Cells:
@@ -217,9 +225,19 @@ def populate(study: Study) -> Population:
         probability,
         highest,
         quantum,
+        _largest(study),
         {},
     )
     return _recruited(study, made)
+
+
+def _largest(study: Study) -> float:
+    """Return the conductance at which tables of EPSPs end, nS."""
+    bundles = [
+        release.sites * release.probability.mean * release.quantum
+        for release in (it.release for it in study.inputs.values() if it.kind == "excitatory")
+    ]
+    return TABULATED * max(bundles, default=1.0)
 
 
 def _recruited(study: Study, made: Population) -> Population:
@@ -232,7 +250,7 @@ def _recruited(study: Study, made: Population) -> Population:
     for name, epsp in wanted.items():
         score = draws.named(study.seed, study.cells, f"baseline EPSP of {name}")
         target = draws.lognormal(epsp.target, epsp.cv, score)
-        reached, grid = reader.peaks(name), axis(reader.top, OWN_NODES)
+        reached, grid = _finer(reader, name)
         needed = np.array(
             [np.interp(t, *_rising(row, grid)) for t, row in zip(target, reached, strict=True)]
         )
@@ -250,6 +268,16 @@ def _recruited(study: Study, made: Population) -> Population:
     return replace(made, sites=sites, short={k: v for k, v in short.items() if v})
 
 
+def _finer(reader: Reader, name: str) -> tuple[Floats, Floats]:
+    """Return an input's table of EPSPs (cell, point) between its nodes too, and its points (nS).
+
+    A straight line from node to node would recruit up to one site too many.
+    """
+    grid = axis(reader.top, FINER * OWN_NODES)
+    along = np.tile(position(grid, reader.top, OWN_NODES), (len(reader.loads), 1))
+    return interpolate(reader.peaks(name)[:, None, :], along), grid
+
+
 def _rising(row: Floats, grid: Floats) -> tuple[Floats, Floats]:
     """Return the rising part of an EPSP table, so that it can be inverted."""
     top = int(np.argmax(row)) + 1
@@ -263,4 +291,4 @@ def bare_reader(population: Population, chosen: slice = slice(None)) -> Reader:
     numbers = Numbers(none, none, none, none, none, none, none, 0.0)
     events = events_of(scene, {}, np.empty(0), pre_is="arrival")
     wiring = wire(scene, events, end=0.0, readings=np.empty(0), numbers=numbers, route=None)
-    return Reader(scene, wiring, population.base(chosen))
+    return Reader(scene, wiring, population.base(chosen), top=population.top)

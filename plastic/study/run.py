@@ -9,9 +9,11 @@ from collections.abc import Callable
 from concurrent.futures import FIRST_COMPLETED, Future, ThreadPoolExecutor, wait
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Annotated
 
 import numpy as np
 import xarray as xr
+from pydantic import TypeAdapter, ValidationError
 
 from plastic.engine.kernel import module_for
 from plastic.errors import StudyError
@@ -90,15 +92,21 @@ def run(
 
 def _changed(study: Study, changes: dict[str, int]) -> Study:
     """Return the study with other numbers of cells or another seed, keeping its source."""
+    for key, value in changes.items():
+        try:
+            TypeAdapter(Annotated[int, *Study.model_fields[key].metadata]).validate_python(value)
+        except ValidationError as error:
+            allowed = str(error.errors()[0]["ctx"]["allowed"])
+            raise StudyError(file=study.file, key=key, value=value, allowed=allowed) from None
     copy = study.model_copy(update=changes)
     copy.model_post_init({"text": study.text, "file": study.file})
     return copy
 
 
 def _run_in(study: Study, path: Path, workers: int | None, progress: Progress | None) -> xr.Dataset:
+    _check_room(study, largest_bytes(study))
     population = populate(study)
     grid = grid_of(study, population)
-    _check_room(study, largest_bytes(study, grid))
     folder = Folder(path, study)
     results = path / RESULTS
     if results.exists():

@@ -9,11 +9,12 @@ from __future__ import annotations
 import contextlib
 import hashlib
 import importlib.metadata
+import io
 import json
 import os
 import platform
-import tempfile
 import tomllib
+import uuid
 import zipfile
 from collections.abc import Iterator
 from pathlib import Path
@@ -67,12 +68,11 @@ def replacing(path: Path) -> Iterator[Path]:
     StoreError
         When the folder cannot be written to, or the disk is full.
     """
+    temporary = path.parent / f".{path.name}-{uuid.uuid4().hex[:12]}.part"
     try:
-        handle, part = tempfile.mkstemp(dir=path.parent, prefix=f".{path.name}-", suffix=".part")
-        os.close(handle)
+        temporary.touch(exist_ok=False)  # not mkstemp: others may read what the umask lets them
     except OSError as error:
         raise StoreError(f"{path.parent}: cannot be written to ({error.strerror})") from None
-    temporary = Path(part)
     try:
         yield temporary
         with open(temporary, "rb") as file:
@@ -82,6 +82,11 @@ def replacing(path: Path) -> Iterator[Path]:
         raise StoreError(f"{path}: could not be written ({error.strerror or error})") from None
     finally:
         temporary.unlink(missing_ok=True)
+
+
+def _left_over(path: Path) -> bool:
+    """Return whether a file is what a killed run left of its mark."""
+    return path.name.startswith(f".{MARK}-") and path.suffix == ".part"
 
 
 class Folder:
@@ -97,27 +102,33 @@ class Folder:
         if self.path.exists() and not self.path.is_dir():
             raise StoreError(f"{self.path}: is a file; give --out a folder")
         if mark.exists():
-            try:
-                made_by = json.loads(mark.read_text())
-                title, found = made_by["title"], made_by["study_hash"]
-            except (OSError, ValueError, KeyError, TypeError):
-                raise StoreError(f"{mark}: cannot be read; give --out another folder") from None
-            if found != self.hash:
-                raise StoreError(
-                    f"{self.path}: made by another study ({title!r}, hash {found}; this one is "
-                    f"{self.hash}); give --out another folder, nothing was changed"
-                )
-            return
-        if self.path.exists() and any(self.path.iterdir()):
+            self._recognise(mark)
+        elif self.path.exists() and any(not _left_over(p) for p in self.path.iterdir()):
             raise StoreError(
                 f"{self.path}: holds files that plastic did not make; give --out another folder"
             )
         try:
-            (self.path / BLOCKS).mkdir(parents=True, exist_ok=True)
+            self.path.mkdir(parents=True, exist_ok=True)
+            if not mark.exists():  # before anything else, so that a killed run keeps its folder
+                told = json.dumps({"title": study.title, "study_hash": self.hash}, indent=1)
+                with replacing(mark) as part:
+                    part.write_text(told)
+            (self.path / BLOCKS).mkdir(exist_ok=True)
         except OSError as error:
             raise StoreError(f"{self.path}: cannot be made ({error.strerror})") from None
-        with replacing(mark) as part:
-            part.write_text(json.dumps({"title": study.title, "study_hash": self.hash}, indent=1))
+
+    def _recognise(self, mark: Path) -> None:
+        """Refuse a folder whose mark is of another study."""
+        try:
+            made_by = json.loads(mark.read_text())
+            title, found = made_by["title"], made_by["study_hash"]
+        except (OSError, ValueError, KeyError, TypeError):
+            raise StoreError(f"{mark}: cannot be read; give --out another folder") from None
+        if found != self.hash:
+            raise StoreError(
+                f"{self.path}: made by another study ({title!r}, hash {found}; this one is "
+                f"{self.hash}); give --out another folder, nothing was changed"
+            )
 
     def block(self, arm: Arm, first: int, last: int) -> Path:
         """Return the file of one block."""
@@ -134,7 +145,7 @@ class Folder:
         if not file.exists():
             return None
         try:
-            with np.load(file) as stored:
+            with open(file, "rb") as opened, np.load(opened) as stored:
                 return {name: stored[name] for name in stored.files}
         except (OSError, ValueError, zipfile.BadZipFile, KeyError, EOFError):
             return None
@@ -163,12 +174,14 @@ def load(path: str | Path) -> xr.Dataset:
     return found
 
 
-def largest_bytes(study: Study, grid: Grid) -> int:
-    """Return how large the results of a study get, in bytes."""
-    readings = max(len(reading_times(s)[0]) for s in grid.schedules.values())
+def largest_bytes(study: Study) -> int:
+    """Return how large the results of a study get, in bytes; no cell is drawn for it."""
+    schedules = study.schedules().values()
+    readings = max(len(reading_times(s)[0]) for s in schedules)
+    arms = sum(1 if s.control else len(study.compare.routes) for s in schedules)
     inputs = len(read_inputs(study))
     per_reading = 12 * inputs + 3 * 8 + 16
-    return len(grid.arms) * study.cells * (readings * per_reading + 80) * 4
+    return len(study.compare.rules) * arms * study.cells * (readings * per_reading + 80) * 4
 
 
 def _versions() -> str:
@@ -179,14 +192,17 @@ def _versions() -> str:
 def write_results(
     path: Path, study: Study, population: Population, grid: Grid, blocks: Any
 ) -> None:
-    """Write the results file, one arm at a time, atomically.
+    """Write the results file, atomically.
+
+    It is made in memory first: a disk that fills up under an open HDF5 file ends the process.
 
     Parameters
     ----------
     blocks : callable
         Arm -> its arrays over all cells.
     """
-    with replacing(path) as part, h5netcdf.File(part, "w") as file:
+    image = io.BytesIO()
+    with h5netcdf.File(image, "w") as file:
         sizes = _axes(file, study, population, grid)
         status = np.full(
             [len(a) for a in (grid.rules, grid.routes, grid.protocols)], NOT_RUN, np.int8
@@ -206,6 +222,8 @@ def write_results(
             status[arm.place] = COMPLETE
         _put(file, "status", ARM, status, "1", "status of the arm", STATUSES)
         _attributes(file, study, population)
+    with replacing(path) as part:
+        part.write_bytes(image.getbuffer())
 
 
 def _axes(file: Any, study: Study, population: Population, grid: Grid) -> dict[str, int]:

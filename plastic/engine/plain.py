@@ -1,0 +1,137 @@
+"""The membrane and the contacts of one cell in plain Python: the parts of the reference loop.
+
+The membrane moves by the matrix exponential of the formulas in `plastic.membrane.cable`; contacts
+draw from `plastic.draws`. What the compiled loop has instead is in `plastic.engine.steps`.
+"""
+
+from __future__ import annotations
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+from scipy.linalg import expm
+
+from plastic import draws
+from plastic.engine.layout import Floats, Wiring
+from plastic.engine.steps import CUT
+from plastic.membrane.cable import conductances, leaks
+from plastic.membrane.tree import Tree
+
+
+def kept(gap: float, tau: float) -> float:
+    """Return what is left after `gap` of something that decays with `tau`; 0: nothing ever is."""
+    return math.exp(-gap / tau) if tau > 0 else 0.0
+
+
+class Membrane:
+    """Voltages relative to rest (mV) and the open conductances (nS) of one cell.
+
+    A step is half a step of the synapses, one of the membrane, half a step of the synapses.
+    """
+
+    def __init__(self, wiring: Wiring, load: float) -> None:
+        self.plan, self.load = wiring.plan[0], load
+        self.groups = [
+            tuple(float(one[n]) for n in ("norm", "keep_decay", "keep_rise", "reversal"))
+            for one in wiring.groups
+        ]
+        self.node = [
+            int(slot["node"]) for slot in wiring.slots for _ in range(slot["first"], slot["last"])
+        ]
+        stretches, nodes = wiring.stretches, int(self.plan["n_nodes"])
+        self.tree = Tree(
+            n_nodes=nodes,
+            node_of={},
+            node_distance=np.zeros(nodes),
+            node_dendrite=[],
+            stretch_parent=stretches["parent"],
+            stretch_child=stretches["child"],
+            stretch_length=stretches["length"],
+            stretch_diameter=stretches["diameter"],
+            stretch_dendrite=[],
+        )
+        self.v = np.zeros(nodes)
+        self.slow, self.fast = [0.0] * len(self.groups), [0.0] * len(self.groups)
+        self.widen(np.ones(len(stretches)))
+
+    def widen(self, multiple: Floats) -> None:
+        """Give every stretch a multiple of its diameter."""
+        rm, ri, dt = (float(self.plan[n]) for n in ("rm", "ri", "dt"))
+        capacitance = self.plan["tau_m"] * leaks(self.tree, self.load, rm, ri, multiple)
+        matrix = conductances(self.tree, self.load, rm, ri, multiple)
+        self.propagator = expm(-dt * matrix / capacitance[:, np.newaxis])
+        self.half_over_c = dt / 2 / capacitance
+
+    def open(self, group: int, amount: float) -> None:
+        """Open a conductance with a peak of `amount` nS."""
+        norm, _, keep_rise, _ = self.groups[group]
+        self.slow[group] += amount * norm
+        if keep_rise > 0:
+            self.fast[group] += amount * norm
+
+    def step(self) -> None:
+        """Let one time step pass."""
+        if not any(self.slow):
+            self.v = self.propagator @ self.v
+            return
+        self._synapses()
+        self.v = self.propagator @ self.v
+        for g, (_, keep_decay, keep_rise, _) in enumerate(self.groups):
+            self.slow[g] *= keep_decay
+            self.fast[g] *= keep_rise
+            if self.slow[g] < CUT:
+                self.slow[g] = self.fast[g] = 0.0
+        self._synapses()
+
+    def _synapses(self) -> None:
+        """Relax each node towards the reversal of what is open there, for half a step."""
+        total, drive = dict.fromkeys(self.node, 0.0), dict.fromkeys(self.node, 0.0)
+        for g, (_, _, _, reversal) in enumerate(self.groups):
+            total[self.node[g]] += self.slow[g] - self.fast[g]
+            drive[self.node[g]] += (self.slow[g] - self.fast[g]) * reversal
+        for node, open_here in total.items():
+            if open_here > 0:
+                share = -math.expm1(-open_here * self.half_over_c[node])
+                self.v[node] += (drive[node] / open_here - self.v[node]) * share
+
+
+@dataclass
+class Terminal:
+    """Release at one contact: the utilisation and resources it remembers, or its empty sites."""
+
+    stream: int
+    cv: float
+    recovery: float
+    facilitation: float
+    deterministic: bool
+    use: float = 0.0
+    full: float = 1.0
+    empty: int = 0
+    last: float = -math.inf
+    events: int = 0
+
+    def release(self, t: float, sites: float, p: float, quantum: float) -> float:
+        """Return the conductance (nS) of the next event, at `t` ms."""
+        self.events += 1
+        if sites <= 0:
+            return 0.0
+        gap, self.last = t - self.last, t
+        self.use = p + self.use * (1 - p) * kept(gap, self.facilitation)
+        still_empty = kept(gap, self.recovery)
+        if self.deterministic:
+            found = 1 - (1 - self.full) * still_empty
+            self.full = found * (1 - self.use)
+            return sites * self.use * found * quantum
+        return quantum * self._quanta(self.events - 1, sites, 1 - still_empty)
+
+    def _quanta(self, ordinal: int, sites: float, refilled: float) -> float:
+        """Return the sum of the quanta that the full sites release, in quanta."""
+        whole = math.floor(sites)
+        there = whole + (draws.uniform(self.stream, ordinal, draws.FRACTION) < sites - whole)
+        self.empty -= draws.binomial(self.stream, ordinal, self.empty, refilled, draws.REFILL)
+        count = draws.binomial(self.stream, ordinal, max(there - self.empty, 0), self.use)
+        if self.recovery > 0:
+            self.empty += count
+        spread = self.cv * math.sqrt(count)
+        return max(count + spread * draws.normal(self.stream, ordinal), 0.0)
