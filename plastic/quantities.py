@@ -154,7 +154,8 @@ LONGEST = 1e9
 Time = Annotated[float, Quantity("time", low=0, high=LONGEST)]
 Duration = Annotated[float, Quantity("time", above=0, high=LONGEST)]
 Rate = Annotated[float, Quantity("rate", above=0)]
-Potential = Annotated[float, Quantity("potential", low=-200, high=200)]
+POTENTIAL = Quantity("potential", low=-200, high=200)
+Potential = Annotated[float, POTENTIAL]
 Text = Annotated[str, StringConstraints(strict=True, min_length=1, strip_whitespace=True)]
 Flag = StrictBool
 

@@ -1,7 +1,7 @@
 """Units at the border: quantities enter as text with a unit and are floats inside.
 
-Inside, always: ms, mV, nS, pA, pF, um, MOhm, Hz. A membrane's specific values keep the units the
-trade writes them in: ohm cm^2, uF/cm^2, ohm cm.
+Inside, always: ms, mV, nS, pA, pF, um, MOhm, Hz, mM, degC. A membrane's specific values keep the
+units the trade writes them in: ohm cm^2, uF/cm^2, ohm cm.
 """
 
 from __future__ import annotations
@@ -26,6 +26,8 @@ INTERNAL = {
     "resistance": "Mohm",
     "rate": "Hz",
     "velocity": "um/ms",
+    "concentration": "mM",
+    "temperature": "degC",
     "membrane resistance": "ohm*cm**2",
     "membrane capacitance": "uF/cm**2",
     "axial resistivity": "ohm*cm",
@@ -60,6 +62,8 @@ def example(dimension: str) -> str:
         "resistance": "150 Mohm",
         "rate": "20 Hz",
         "velocity": "0.5 m/s",
+        "concentration": "130 mM",
+        "temperature": "32 degC",
         "membrane resistance": "15 kohm cm^2",
         "membrane capacitance": "1 uF/cm^2",
         "axial resistivity": "150 ohm cm",
@@ -112,7 +116,8 @@ def number_in(text: object, dimension: str) -> float:
     if isinstance(text, bool) or not isinstance(text, (str, int, float)):
         raise QuantityError(text, dimension, f"no quantity (write it like {example(dimension)!r})")
     if not isinstance(text, str):
-        if wanted and text != 0:
+        zero = text == 0 and dimension != "temperature"  # whose scales differ in where 0 is
+        if wanted and not zero:
             raise QuantityError(
                 text, dimension, f"without a unit (write it like {example(dimension)!r})"
             )
@@ -124,14 +129,22 @@ def number_in(text: object, dimension: str) -> float:
     return value
 
 
+def _quantity(text: str) -> Any:
+    try:
+        return _registry().Quantity(text)
+    except pint.OffsetUnitCalculusError:  # "32 degC" is no product: the scale has its own zero
+        number, unit = text.split(" ", 1)
+        return _registry().Quantity(float(number), unit)
+
+
 def _parsed(text: str, dimension: str, wanted: str) -> float:
     hint = f"(write it like {example(dimension)!r})"
     try:
-        quantity: Any = _registry().Quantity(_spaced(text))
+        quantity = _quantity(_spaced(text))
     except Exception:  # pint raises many kinds, all meaning the same to a user
         raise QuantityError(text, dimension, f"no quantity that can be read {hint}") from None
     try:
         return float(quantity.to(wanted).magnitude)
-    except pint.DimensionalityError:
+    except (pint.DimensionalityError, pint.OffsetUnitCalculusError):
         found = f"{quantity.units:~}" or "no unit"
         raise QuantityError(text, dimension, f"in {found}, not a {dimension} {hint}") from None

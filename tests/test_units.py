@@ -33,6 +33,13 @@ SI = [
     ("20 Hz", "rate", 20.0),
     ("0.02 kHz", "rate", 20.0),
     ("0.5 m/s", "velocity", 500.0),
+    ("7 mM", "concentration", 7.0),
+    ("100 uM", "concentration", 0.1),
+    ("0.13 mol/L", "concentration", 130.0),
+    ("0.13 M", "concentration", 130.0),
+    ("32 degC", "temperature", 32.0),
+    ("-5 °C", "temperature", -5.0),
+    ("300 K", "temperature", 26.85),
     ("15 kohm cm^2", "membrane resistance", 15e3),
     ("15 kohm*cm^2", "membrane resistance", 15e3),
     ("1.5 ohm m^2", "membrane resistance", 15e3),
@@ -99,6 +106,20 @@ def test_a_bare_number_needs_its_unit() -> None:
 
 def test_zero_needs_no_unit() -> None:
     assert number_in(0, "time") == 0.0
+
+
+def test_zero_needs_its_unit_where_scales_differ_in_their_zero() -> None:
+    with pytest.raises(QuantityError, match=r"0 is without a unit \(write it like '32 degC'\)"):
+        number_in(0, "temperature")
+    assert number_in("0 degC", "temperature") == 0.0
+    assert number_in("0 K", "temperature") == pytest.approx(-273.15, rel=1e-12)
+
+
+@pytest.mark.parametrize("text", ["32 C", "32 degC/s", "32 degC mM"])
+def test_what_only_looks_like_a_temperature_is_refused(text: str) -> None:
+    """C is the coulomb."""
+    with pytest.raises(QuantityError, match="not a temperature"):
+        number_in(text, "temperature")
 
 
 def test_a_refusal_keeps_its_numbers() -> None:

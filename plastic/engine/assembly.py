@@ -181,6 +181,8 @@ def wire(
     kinds = dict.fromkeys((k.node, k.receptor) for k in scene.contacts)
     groups = sorted(kinds, key=lambda kind: kind[0])
     nodes = [node for node, _ in groups]
+    rise, decay = np.array([(r.rise, r.decay) for _, r in groups]).reshape(-1, 2).T
+    fastest = np.where(rise > 0, rise, 1.0)
     learners = scene.ordered_learners()
     places = [scene.contacts[scene.primary(name)].node for name in learners]
     sites = [0, *dict.fromkeys(node for node in places if node != 0)]
@@ -231,9 +233,11 @@ def wire(
         groups=table(
             layout.GROUP,
             reversal=[r.reversal - scene.rest for _, r in groups],
-            keep_decay=[np.exp(-dt / r.decay) for _, r in groups],
-            keep_rise=[np.exp(-dt / r.rise) if r.rise > 0 else 0.0 for _, r in groups],
-            norm=[float(norm(r.rise, r.decay)) for _, r in groups],
+            keep_decay=np.exp(-dt / decay),
+            keep_rise=np.where(rise > 0, np.exp(-dt / fastest), 0.0),
+            mean_decay=-np.expm1(-dt / decay) * decay / dt,
+            mean_rise=np.where(rise > 0, -np.expm1(-dt / fastest) * fastest / dt, 0.0),
+            norm=[float(norm(*times)) for times in zip(rise, decay, strict=True)],
         ),
         slots=table(
             layout.SLOT,

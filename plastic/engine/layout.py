@@ -28,8 +28,8 @@ PLAN = _fields(
 )
 #: a stretch of dendrite between two nodes; a child of -1 is a sealed stub; um
 STRETCH = _fields("parent child widens", "length diameter")
-#: receptors of one kind at one node
-GROUP = _fields("", "reversal keep_decay keep_rise norm")
+#: receptors of one kind at one node; mean_ is the mean over a step of what decays over it
+GROUP = _fields("", "reversal keep_decay keep_rise mean_decay mean_rise norm")
 #: a node that has receptors, and the range of its groups
 SLOT = _fields("node first last", "")
 #: a contact; recovery and facilitation in ms (0: none), neck in Mohm

@@ -24,11 +24,13 @@ def kept(gap: float, tau: float) -> float:
     return math.exp(-gap / tau) if tau > 0 else 0.0
 
 
-class Membrane:
-    """Voltages relative to rest (mV) and the open conductances (nS) of one cell.
+def mean_left(keep: float) -> float:
+    """Return the mean over a step of what decays from 1 to `keep`; 0 for what is not there."""
+    return (1 - keep) / -math.log(keep) if keep > 0 else 0.0
 
-    A step is half a step of the synapses, one of the membrane, half a step of the synapses.
-    """
+
+class Membrane:
+    """Voltages relative to rest (mV) and the open conductances (nS) of one cell."""
 
     def __init__(self, wiring: Wiring, load: float) -> None:
         self.plan, self.load = wiring.plan[0], load
@@ -60,8 +62,9 @@ class Membrane:
         rm, ri, dt = (float(self.plan[n]) for n in ("rm", "ri", "dt"))
         capacitance = self.plan["tau_m"] * leaks(self.tree, self.load, rm, ri, multiple)
         matrix = conductances(self.tree, self.load, rm, ri, multiple)
-        self.propagator = expm(-dt * matrix / capacitance[:, np.newaxis])
-        self.half_over_c = dt / 2 / capacitance
+        flow = -matrix / capacitance[:, np.newaxis]
+        self.propagator = expm(dt * flow)
+        self.integral = np.linalg.solve(flow, self.propagator - np.eye(len(flow))) / capacitance
 
     def open(self, group: int, amount: float) -> None:
         """Open a conductance with a peak of `amount` nS."""
@@ -72,28 +75,28 @@ class Membrane:
 
     def step(self) -> None:
         """Let one time step pass."""
-        if not any(self.slow):
-            self.v = self.propagator @ self.v
-            return
-        self._synapses()
-        self.v = self.propagator @ self.v
-        for g, (_, keep_decay, keep_rise, _) in enumerate(self.groups):
+        total, drive = np.zeros(len(self.v)), np.zeros(len(self.v))
+        for g, (_, keep_decay, keep_rise, reversal) in enumerate(self.groups):
+            one = self.slow[g] * mean_left(keep_decay) - self.fast[g] * mean_left(keep_rise)
+            total[self.node[g]] += one
+            drive[self.node[g]] += one * reversal
             self.slow[g] *= keep_decay
             self.fast[g] *= keep_rise
             if self.slow[g] < CUT:
                 self.slow[g] = self.fast[g] = 0.0
-        self._synapses()
+        before, self.v = self.v, self.propagator @ self.v
+        self.v = self.v + self.integral @ self._currents(total, drive, before)
 
-    def _synapses(self) -> None:
-        """Relax each node towards the reversal of what is open there, for half a step."""
-        total, drive = dict.fromkeys(self.node, 0.0), dict.fromkeys(self.node, 0.0)
-        for g, (_, _, _, reversal) in enumerate(self.groups):
-            total[self.node[g]] += self.slow[g] - self.fast[g]
-            drive[self.node[g]] += (self.slow[g] - self.fast[g]) * reversal
-        for node, open_here in total.items():
-            if open_here > 0:
-                share = -math.expm1(-open_here * self.half_over_c[node])
-                self.v[node] += (drive[node] / open_here - self.v[node]) * share
+    def _currents(self, total: Floats, drive: Floats, before: Floats) -> Floats:
+        """Return the current (pA) into every node, held over the step.
+
+        I = drive - total (theta v_end + (1 - theta) v_before) with theta = (1 + x) / (2 + x),
+        x = total times the node's own integral, and v_end the voltage that these currents give.
+        """
+        theta = (1 + total * self.integral.diagonal()) / (2 + total * self.integral.diagonal())
+        weight = (total * theta)[:, np.newaxis]
+        wanted = drive - total * (theta * self.v + (1 - theta) * before)
+        return np.asarray(np.linalg.solve(np.eye(len(total)) + weight * self.integral, wanted))
 
 
 @dataclass

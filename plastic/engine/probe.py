@@ -12,49 +12,36 @@ import numpy as np
 
 from plastic.engine.steps import (  # noqa: F401 - some are used by what is pasted
     CUT,
-    DOUBLINGS,
+    U0,
+    U1,
+    U2,
+    U3,
+    U4,
     apply,
     compiled,
+    eliminate,
     fade,
+    inject,
     kept,
-    membrane,
-    padded,
-    propagators,
+    mean_open,
+    new_membrane,
     quanta,
-    relaxed,
-    respond,
+    rebuild,
     stream_of,
-    synaptic_half,
     trials_of,
 )
-
-
-@compiled
-def set_geometry(plan, stretches, multiple, load, conductance, leak, powers, work, half_over_c):
-    """Fill the one-step propagator and half a step over the capacitance of every node."""
-    membrane(stretches, multiple, plan.rm, plan.ri, load, conductance, leak)
-    propagators(conductance, leak, plan.n_nodes, plan.tau_m, plan.dt, powers, work)
-    for node in range(plan.n_nodes):
-        half_over_c[node] = 0.5 * plan.dt / (plan.tau_m * leak[node])
 
 
 @compiled
 def run_probe(
     groups,
     slots,
-    single,
-    half_over_c,
+    m,
     open_step,
     open_group,
     amount,
     threshold,
     trace,
-    v,
-    scratch,
-    slow,
-    fast,
-    keep,
-    push,
 ):
     """Run one probe into `trace`; return the step at which the soma reaches threshold, or -1.
 
@@ -62,12 +49,12 @@ def run_probe(
     past its last peak: an excitatory conductance can lift it once more when inhibition is over, so
     each is given three of its time constants. What is left of the trace stays at the last value.
     """
+    v, out, slow, fast, single = m.v, m.out, m.slow, m.fast, m.powers[0]
     for node in range(v.shape[0]):
         v[node] = 0.0
     for g in range(slow.shape[0]):
         slow[g] = 0.0
         fast[g] = 0.0
-    stale = True
     o, top, fired, lifted = 0, 0.0, -1, open_step[open_step.shape[0] - 1] + 50.0
     for k in range(open_step.shape[0]):
         if groups[open_group[k]].reversal > 0.0 and amount[k] > 0.0:
@@ -90,15 +77,11 @@ def run_probe(
             if groups[g].keep_rise > 0.0:
                 fast[g] += scaled
             o += 1
-            stale = True
-        if stale:
-            respond(groups, slots, half_over_c, slow, fast, keep, push)
-            stale = False
-        synaptic_half(v, slots, keep, push)
-        apply(single, v, scratch)
+        mean_open(groups, slots, slow, fast, m.total, m.drive)
+        apply(single, v, out)
+        inject(slots, m.spread, m.total, m.drive, v, out, m.which, m.matrix, m.current)
+        v, out = out, v
         _open = fade(groups, slow, fast)
-        respond(groups, slots, half_over_c, slow, fast, keep, push)
-        synaptic_half(v, slots, keep, push)
         step += 1
     for rest in range(step, trace.shape[0]):
         trace[rest] = v[0]
@@ -144,44 +127,13 @@ def run_shapes(
 ):
     """Fill out (cell, geometry, probe, 4) with EPSP shapes; amounts (cell, probe, opening), nS."""
     plan = plans[0]
-    size = padded(plan.n_nodes)
-    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
-    conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
-    work, trace = np.zeros((3, size, size)), np.zeros(length)
-    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
-    single = powers[0]
+    cell = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], 1)
+    trace = np.zeros(length)
     for c in range(loads.shape[0]):
         for m in range(multiples.shape[0]):
-            set_geometry(
-                plan,
-                stretches,
-                multiples[m],
-                loads[c],
-                conductance,
-                leak,
-                powers,
-                work,
-                half_over_c,
-            )
+            rebuild(plan, stretches, slots, multiples[m], loads[c], cell)
             for k in range(amounts.shape[1]):
-                run_probe(
-                    groups,
-                    slots,
-                    single,
-                    half_over_c,
-                    step,
-                    group,
-                    amounts[c, k],
-                    math.inf,
-                    trace,
-                    v,
-                    scratch,
-                    slow,
-                    fast,
-                    keep,
-                    push,
-                )
+                run_probe(groups, slots, cell, step, group, amounts[c, k], math.inf, trace)
                 shape_of(trace, plan.dt, out[c, m, k])
 
 
@@ -210,27 +162,12 @@ def run_thresholds(
     amounts (cell, opening) holds what else opens. Infinite when `largest` does not fire it.
     """
     plan = plans[0]
-    size = padded(plan.n_nodes)
-    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
-    conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
-    work, trace = np.zeros((3, size, size)), np.zeros(length)
-    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
+    cell = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], 1)
+    trace = np.zeros(length)
     now = np.zeros(step.shape[0])
-    single = powers[0]
     for c in range(loads.shape[0]):
         for m in range(multiples.shape[0]):
-            set_geometry(
-                plan,
-                stretches,
-                multiples[m],
-                loads[c],
-                conductance,
-                leak,
-                powers,
-                work,
-                half_over_c,
-            )
+            rebuild(plan, stretches, slots, multiples[m], loads[c], cell)
             for a in range(added_amounts.shape[0]):
                 if a > 0 and out[c, m, a - 1] == 0.0:
                     out[c, m, a] = 0.0  # the added conductance alone was enough
@@ -245,23 +182,7 @@ def run_thresholds(
                     )
                     for o in range(step.shape[0]):
                         now[o] = amounts[c, o] + own[o] * middle + added[o] * added_amounts[a]
-                    fired = run_probe(
-                        groups,
-                        slots,
-                        single,
-                        half_over_c,
-                        step,
-                        group,
-                        now,
-                        thresholds[c],
-                        trace,
-                        v,
-                        scratch,
-                        slow,
-                        fast,
-                        keep,
-                        push,
-                    )
+                    fired = run_probe(groups, slots, cell, step, group, now, thresholds[c], trace)
                     if fired >= 0:
                         high = middle
                     else:
@@ -298,27 +219,12 @@ def run_chances(
     (sites, probability, quantum); multiples (cell, reading, stretch).
     """
     plan = plans[0]
-    size = padded(plan.n_nodes)
-    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
-    conductance, powers = np.zeros((size, size)), np.zeros((1, size, size))
-    work, trace = np.zeros((3, size, size)), np.zeros(length)
-    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    keep, push = np.ones(slots.shape[0]), np.zeros(slots.shape[0])
+    cell = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], 1)
+    trace = np.zeros(length)
     now = np.zeros(step.shape[0])
-    single = powers[0]
     for c in range(loads.shape[0]):
         for r in range(out.shape[1]):
-            set_geometry(
-                plan,
-                stretches,
-                multiples[c, r],
-                loads[c],
-                conductance,
-                leak,
-                powers,
-                work,
-                half_over_c,
-            )
+            rebuild(plan, stretches, slots, multiples[c, r], loads[c], cell)
             fires = 0
             for trial in range(trials):
                 for o in range(step.shape[0]):
@@ -329,23 +235,7 @@ def run_chances(
                         stream, ordinal, available, release[c, r, o, 1], release[c, r, o, 2], cv[o]
                     )
                     now[o] = amount
-                fired = run_probe(
-                    groups,
-                    slots,
-                    single,
-                    half_over_c,
-                    step,
-                    group,
-                    now,
-                    thresholds[c],
-                    trace,
-                    v,
-                    scratch,
-                    slow,
-                    fast,
-                    keep,
-                    push,
-                )
+                fired = run_probe(groups, slots, cell, step, group, now, thresholds[c], trace)
                 fires += 1 if fired >= 0 else 0
             out[c, r] = fires / trials
 

@@ -7,6 +7,7 @@ scalars and small arrays, so that it can be read next to the formulas of `plasti
 from __future__ import annotations
 
 import math
+from typing import Any, NamedTuple
 
 import numpy as np
 from numba import njit
@@ -18,7 +19,10 @@ R30, R27, R31, R11 = np.uint64(30), np.uint64(27), np.uint64(31), np.uint64(11)
 ONE, PARTS = np.uint64(1), np.uint64(4096)
 FRACTION, NORMAL_A, NORMAL_B, REFILL = 2045, 2046, 2047, 2048
 DOUBLINGS = 26  # powers of two of one step that a jump may use
-CUT = 1e-6  # nS: a conductance below it is over
+CUT = 1e-5  # nS: a conductance below it is over
+
+#: unsigned: a signed index is tested for being negative at every access
+U0, U1, U2, U3, U4 = (np.uintp(k) for k in range(5))
 
 #: every compiled function: no lock held, and x/0 is inf or nan (runs end with a check) as in numpy
 compiled = njit(nogil=True, error_model="numpy")
@@ -90,16 +94,6 @@ def trials_of(stream, ordinal, sites):
 
 
 @compiled
-def relaxed(z):
-    """Return (1 - exp(-z)) / z; below 0.25 by the [4/4] Pade form of exp, exact to 1e-12."""
-    if z < 0.25:
-        square = z * z
-        odd = 840.0 + 20.0 * square
-        return 2.0 * odd / (1680.0 + square * (180.0 + square) + z * odd)
-    return -math.expm1(-z) / z
-
-
-@compiled
 def product(a, b, out):
     """Write the matrix product a b into out."""
     n = a.shape[0]
@@ -145,13 +139,17 @@ def membrane(stretches, multiple, rm, ri, load, conductance, leak):
 
 
 @compiled
-def propagators(conductance, leak, n, tau_m, dt, powers, work):
-    """Fill powers[j] with the exact propagator of 2**j steps of the quiet membrane, transposed."""
+def propagators(conductance, leak, slots, n, tau_m, dt, powers, spread, work):
+    """Fill powers[j] with the exact propagator of 2**j steps of the quiet membrane, transposed.
+
+    spread[slot, node] is what a current of 1 pA into the slot's node, held for one step, leaves
+    there (mV): the integral of the propagator over the step, over the capacitance (pF).
+    """
     biggest = 0.0
     for i in range(work.shape[1]):
         for j in range(work.shape[1]):
             powers[0, i, j] = 0.0
-            for layer in range(3):
+            for layer in range(4):
                 work[layer, i, j] = 0.0
     for i in range(n):
         row = 0.0
@@ -169,46 +167,110 @@ def propagators(conductance, leak, n, tau_m, dt, powers, work):
             work[0, i, j] *= scale
         work[1, i, i] = 1.0
         powers[0, i, i] = 1.0
+        work[3, i, i] = scale * dt
     for order in range(1, 12):
         product(work[1], work[0], work[2])
         for i in range(n):
             for j in range(n):
                 work[1, i, j] = work[2, i, j] / order
                 powers[0, i, j] += work[1, i, j]
+                work[3, i, j] += work[1, i, j] * scale * dt / (order + 1)
     for _ in range(halvings):
-        product(powers[0], powers[0], work[1])
+        product(powers[0], work[3], work[1])
+        product(powers[0], powers[0], work[2])
         for i in range(n):
             for j in range(n):
-                powers[0, i, j] = work[1, i, j]
+                work[3, i, j] += work[1, i, j]
+                powers[0, i, j] = work[2, i, j]
+    for slot in range(slots.shape[0]):
+        node = slots[slot].node
+        for i in range(work.shape[1]):
+            spread[slot, i] = work[3, node, i] / (tau_m * leak[node])
     for j in range(1, powers.shape[0]):
         product(powers[j - 1], powers[j - 1], powers[j])
-
-
-@compiled
-def apply(turned, v, out):
-    """Replace v by the product of a matrix, given transposed, and v; four rows at a time."""
-    if v.shape[0] == 1:
-        v[0] *= turned[0, 0]
-    else:
-        for row in range(0, v.shape[0], 4):
-            one = two = three = four = 0.0
-            for col in range(v.shape[0]):
-                one += turned[col, row] * v[col]
-                two += turned[col, row + 1] * v[col]
-                three += turned[col, row + 2] * v[col]
-                four += turned[col, row + 3] * v[col]
-            out[row] = one
-            out[row + 1] = two
-            out[row + 2] = three
-            out[row + 3] = four
-        for row in range(v.shape[0]):
-            v[row] = out[row]
 
 
 @compiled
 def padded(n):
     """Return the length of node arrays: one, or the next multiple of four."""
     return 1 if n == 1 else (n + 3) // 4 * 4
+
+
+class Membrane(NamedTuple):
+    """The arrays of one cell's membrane: its matrices, its state, and room to work in.
+
+    `size` is the number of nodes, padded; leak and conductance in nS, v in mV over rest.
+    """
+
+    leak: Any  # (size,)
+    conductance: Any  # (size, size)
+    powers: Any  # (doublings, size, size) propagators of 1, 2, 4 ... steps, transposed
+    spread: Any  # (slot, size) mV per pA
+    work: Any  # (4, size, size)
+    v: Any  # (size,)
+    out: Any  # (size,) v after a step
+    slow: Any  # (group,) nS
+    fast: Any  # (group,) nS
+    total: Any  # (slot,) nS
+    drive: Any  # (slot,) pA
+    current: Any  # (slot,) pA
+    which: Any  # (slot,)
+    matrix: Any  # (slot, slot)
+
+
+@compiled
+def new_membrane(nodes, groups, slots, doublings):
+    """Return the arrays of a membrane at rest, with nothing open."""
+    size = padded(nodes)
+    return Membrane(
+        np.zeros(size),
+        np.zeros((size, size)),
+        np.zeros((doublings, size, size)),
+        np.zeros((slots, size)),
+        np.zeros((4, size, size)),
+        np.zeros(size),
+        np.zeros(size),
+        np.zeros(groups),
+        np.zeros(groups),
+        np.zeros(slots),
+        np.zeros(slots),
+        np.zeros(slots),
+        np.zeros(slots, np.int64),
+        np.zeros((slots, slots)),
+    )
+
+
+@compiled
+def rebuild(plan, stretches, slots, multiple, load, m):
+    """Set the matrices of a membrane for the present diameters and the load (nS) at its soma."""
+    membrane(stretches, multiple, plan.rm, plan.ri, load, m.conductance, m.leak)
+    propagators(
+        m.conductance, m.leak, slots, plan.n_nodes, plan.tau_m, plan.dt, m.powers, m.spread, m.work
+    )
+
+
+@compiled
+def apply(turned, v, out):
+    """Write the product of a matrix, given transposed, and v into out; four rows at a time."""
+    if v.shape[0] == 1:
+        out[0] = turned[0, 0] * v[0]
+    else:
+        n, row = np.uintp(v.shape[0]), U0
+        while row < n:
+            one = two = three = four = 0.0
+            col = U0
+            while col < n:
+                x = v[col]
+                one += turned[col, row] * x
+                two += turned[col, row + U1] * x
+                three += turned[col, row + U2] * x
+                four += turned[col, row + U3] * x
+                col += U1
+            out[row] = one
+            out[row + U1] = two
+            out[row + U2] = three
+            out[row + U3] = four
+            row += U4
 
 
 @compiled
@@ -222,36 +284,82 @@ def jump(powers, steps, v, out):
     while steps > 0:
         if steps & 1:
             apply(powers[j], v, out)
+            for node in range(v.shape[0]):
+                v[node] = out[node]
         steps >>= 1
         j += 1
 
 
 @compiled
-def respond(groups, slots, half_over_c, slow, fast, keep, push):
-    """Set what the open conductances do in half a step, exactly for constant g: v -> keep v + push.
+def mean_open(groups, slots, slow, fast, total, drive):
+    """Set what is open at each slot on average over the coming step: conductance (nS), drive (pA).
 
-    Does not depend on v, so that a processor can work it out while the membrane is being stepped.
+    The drive is conductance times reversal. Exact: the kinetics are exponentials.
     """
     for slot in range(slots.shape[0]):
-        total = drive = 0.0
-        for g in range(slots[slot].first, slots[slot].last):
-            total += slow[g] - fast[g]
-            drive += (slow[g] - fast[g]) * groups[g].reversal
-        keep[slot], push[slot] = 1.0, 0.0
-        if total == 0.0:
-            continue
-        h = half_over_c[slots[slot].node]
-        share = h * relaxed(total * h)
-        keep[slot] = 1.0 - total * share
-        push[slot] = drive * share
+        open_here = pulled = 0.0
+        of, end = np.uintp(slots[slot].first), np.uintp(slots[slot].last)
+        while of < end:
+            one = slow[of] * groups[of].mean_decay - fast[of] * groups[of].mean_rise
+            open_here += one
+            pulled += one * groups[of].reversal
+            of += U1
+        total[slot] = open_here
+        drive[slot] = pulled
 
 
 @compiled
-def synaptic_half(v, slots, keep, push):
-    """Let the open conductances act on their nodes for half a step."""
+def inject(slots, spread, total, drive, v, out, which, matrix, current):
+    """Add to out, the quiet step from v, the currents of the open conductances.
+
+    The current I into a slot's node is held over the step, so that its charge reaches every node
+    exactly. It meets the voltage between v and the end of the step, out + sum of spread I, weighted
+    1 : 1 + x with x = total spread: second order in the step, and for large x the node goes to the
+    reversal without ringing (the step function of one node is 1 / (1 + x + x^2 / 2)). The equations
+    of slots that are open together are solved together; they need no pivots, since each is a
+    positive multiple of a symmetric positive one.
+    """
+    n_open = 0
     for slot in range(slots.shape[0]):
-        node = slots[slot].node
-        v[node] = keep[slot] * v[node] + push[slot]
+        if total[slot] > 0.0:
+            which[n_open] = slot
+            n_open += 1
+    for a in range(n_open):
+        slot = which[a]
+        node, g = slots[slot].node, total[slot]
+        x = g * spread[slot, node]
+        current[a] = (2.0 + x) * drive[slot] - g * ((1.0 + x) * out[node] + v[node])
+        if n_open == 1:
+            current[a] /= 2.0 + x * (2.0 + x)
+        else:
+            for b in range(n_open):
+                matrix[a, b] = (1.0 + x) * g * spread[which[b], node]
+            matrix[a, a] += 2.0 + x
+    if n_open > 1:
+        eliminate(matrix, current, n_open)
+    for a in range(n_open):
+        shared, held = np.uintp(which[a]), current[a]
+        at = U0
+        while at < np.uintp(out.shape[0]):
+            out[at] += spread[shared, at] * held
+            at += U1
+
+
+@compiled
+def eliminate(matrix, values, n):
+    """Solve n equations in place, without pivots; the solution takes the place of the values."""
+    for a in range(n):
+        matrix[a, a] = 1.0 / matrix[a, a]
+        for row in range(a + 1, n):
+            ratio = matrix[row, a] * matrix[a, a]
+            values[row] -= ratio * values[a]
+            for b in range(a + 1, n):
+                matrix[row, b] -= ratio * matrix[a, b]
+    for back in range(n):
+        a = n - 1 - back
+        for b in range(a + 1, n):
+            values[a] -= matrix[a, b] * values[b]
+        values[a] *= matrix[a, a]
 
 
 @compiled

@@ -12,9 +12,10 @@ One step of the loop, at time t = step * dt:
 3.  Presynaptic events open conductances, with the strength of just before the instant.
 4.  The rule learns: all changes read the state before the instant, add, then bounds hold, then
     traces jump.
-5.  The membrane takes one step (half synapses, exact linear propagator, half synapses), or, when
-    no conductance is open and no node is above threshold, jumps exactly to the next thing due:
-    with leak to rest everywhere the highest node can only fall, so no spike is missed.
+5.  The membrane takes one step (the exact linear propagator, and the currents of the open
+    conductances, held over the step, through its exact integral), or, when no conductance is open
+    and no node is above threshold, jumps exactly to the next thing due: with leak to rest
+    everywhere the highest node can only fall, so no spike is missed.
 
 Traces are stored scaled, x(t) exp((t - t_ref)/tau), so that an event costs no exponential; t_ref
 moves up before the scale gets large.
@@ -29,22 +30,26 @@ import numpy as np
 from plastic.engine.steps import (  # noqa: F401 - some are used by what is pasted
     CUT,
     DOUBLINGS,
+    U0,
+    U1,
+    U2,
+    U3,
+    U4,
     apply,
     binomial,
     compiled,
+    eliminate,
     fade,
     highest_of,
+    inject,
     jump,
     kept,
-    membrane,
-    padded,
+    mean_open,
+    new_membrane,
     powered,
-    propagators,
     quanta,
-    relaxed,
-    respond,
+    rebuild,
     stream_of,
-    synaptic_half,
     trials_of,
 )
 from plastic.engine.steps import REFILL as REFILL_PART
@@ -353,15 +358,6 @@ def certain(contacts, base, channels, k, deterministic, immediate):
 
 
 @compiled
-def rebuild(plan, stretches, multiple, load, conductance, leak, powers, work, half_over_c):
-    """Set the propagators and half a step over the capacitance for the present diameters."""
-    membrane(stretches, multiple, plan.rm, plan.ri, load, conductance, leak)
-    propagators(conductance, leak, plan.n_nodes, plan.tau_m, plan.dt, powers, work)
-    for node in range(plan.n_nodes):
-        half_over_c[node] = 0.5 * plan.dt / (plan.tau_m * leak[node])
-
-
-@compiled
 def run_cell(w, cells, log, c, stop):
     """Run one cell from the first step to the last; return False when stopped before the end."""
     plan, cell, ended = w.plan[0], cells.cells[c], log.ended[c]
@@ -381,15 +377,11 @@ def run_cell(w, cells, log, c, stop):
     deterministic, clocked = plan.deterministic == 1, plan.clocked == 1
 
     # membrane
-    size = padded(plan.n_nodes)
-    v, scratch, half_over_c, leak = np.zeros(size), np.zeros(size), np.zeros(size), np.zeros(size)
-    conductance = np.zeros((size, size))
-    powers, work = np.zeros((DOUBLINGS, size, size)), np.zeros((3, size, size))
+    m = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], DOUBLINGS)
+    v, out, slow, fast, spread, size = m.v, m.out, m.slow, m.fast, m.spread, m.v.shape[0]
     multiple = np.ones(stretches.shape[0])
-    slow, fast = np.zeros(groups.shape[0]), np.zeros(groups.shape[0])
-    keep, push, stale = np.ones(slots.shape[0]), np.zeros(slots.shape[0]), False
-    rebuild(plan, stretches, multiple, cell.load, conductance, leak, powers, work, half_over_c)
-    single = powers[0]
+    rebuild(plan, stretches, slots, multiple, cell.load, m)
+    single = m.powers[0]
 
     # learning
     S, D = np.empty((N_VARIABLES, n_learners)), np.zeros((N_VARIABLES, n_learners))
@@ -488,18 +480,7 @@ def run_cell(w, cells, log, c, stop):
                 next_tick += tick
             express_all(contacts, base, channels, expressed, now)
             if moved:
-                rebuild(
-                    plan,
-                    stretches,
-                    multiple,
-                    cell.load,
-                    conductance,
-                    leak,
-                    powers,
-                    work,
-                    half_over_c,
-                )
-                stale = True
+                rebuild(plan, stretches, slots, multiple, cell.load, m)
         while next_reading == step:
             for i in range(n_learners):
                 for row in range(N_VARIABLES):
@@ -567,8 +548,6 @@ def run_cell(w, cells, log, c, stop):
                     slow[g] += scaled
                     if groups[g].keep_rise > 0.0:
                         fast[g] += scaled  # a dual exponential starts at zero
-                    else:
-                        stale = True
                     some_open = some_open or amount > 0.0
                 if i >= 0:
                     if RATES:
@@ -621,26 +600,25 @@ def run_cell(w, cells, log, c, stop):
                 goal = min(goal, min(closes, next_tick))  # a tick reads what was before it
             if HAS_FLOW:
                 goal = min(goal, next_tick)  # a tick reads what flowed up to it
-            jump(powers, goal - step, v, scratch)
+            jump(m.powers, goal - step, v, out)
             step = goal
             continue
         if some_open:
-            if stale:
-                respond(groups, slots, half_over_c, slow, fast, keep, push)
-                stale = False
-            if size == 1:  # all but one product and one sum do not wait for v
-                first_keep, first_push = single[0, 0] * keep[0], single[0, 0] * push[0]
-                some_open = fade(groups, slow, fast)
-                respond(groups, slots, half_over_c, slow, fast, keep, push)
-                v[0] = keep[0] * first_keep * v[0] + (keep[0] * first_push + push[0])
+            mean_open(groups, slots, slow, fast, m.total, m.drive)
+            if size == 1:  # what `inject` does to one node: one product and one sum wait for v
+                decay = single[0, 0]
+                x = m.total[0] * spread[0, 0]
+                share = 1.0 / (2.0 + x * (2.0 + x))
+                gain = decay - x * ((1.0 + x) * decay + 1.0) * share
+                v[0] = gain * v[0] + spread[0, 0] * (2.0 + x) * m.drive[0] * share
             else:
-                synaptic_half(v, slots, keep, push)
-                apply(single, v, scratch)
-                some_open = fade(groups, slow, fast)
-                respond(groups, slots, half_over_c, slow, fast, keep, push)
-                synaptic_half(v, slots, keep, push)
+                apply(single, v, out)
+                inject(slots, spread, m.total, m.drive, v, out, m.which, m.matrix, m.current)
+                v, out = out, v
+            some_open = fade(groups, slow, fast)
         else:
-            apply(single, v, scratch)
+            apply(single, v, out)
+            v, out = out, v
         if step < free:
             v[0] = plan.reset
         step += 1

@@ -111,7 +111,8 @@ def _check_release(judge: _Judge, name: str, it: Input) -> None:
     if it.kind == "inhibitory":
         allowed = "is for excitatory inputs; give an inhibitory one its sites and quantum"
         raise judge.refuse(key, f"{target:g} mV", allowed)
-    room = it.receptor.reversal - judge.study.cell.rest
+    rest = judge.study.cell.rest
+    room = it.receptor.reversal_at(rest) - rest
     if target >= room:
         allowed = f"must be below the driving force at rest, {room:g} mV"
         raise judge.refuse(f"{key}.target", f"{target:g} mV", allowed)

@@ -2,14 +2,29 @@
 
 from __future__ import annotations
 
-from typing import Annotated, Literal
+from collections.abc import Mapping
+from typing import Annotated, Any, Literal
 
-from pydantic import BeforeValidator, Field
+from pydantic import BeforeValidator, Field, model_validator
 
 from plastic.draws import MOST_SITES
-from plastic.quantities import Duration, Part, Potential, Quantity, Text, Time, lone
+from plastic.membrane.ions import COLDEST, NONE, WARMEST, Bicarbonate, gaba_reversal, nernst
+from plastic.quantities import (
+    POTENTIAL,
+    Duration,
+    Flag,
+    Part,
+    Potential,
+    Quantity,
+    Text,
+    Time,
+    checked_keys,
+    lone,
+    refusal,
+)
 from plastic.study.cell import Conductance, Spread
 
+Concentration = Annotated[float, Quantity("concentration", above=0, high=1000)]
 Distance = Annotated[float, Quantity("length", low=0, high=1e5)]
 Share = Annotated[float, Quantity("number", above=0, high=1)]
 Likely = Annotated[float, Quantity("number", above=0, high=1)]
@@ -59,12 +74,115 @@ class Release(Part):
     facilitation: Time = 0.0
 
 
-class Receptor(Part):
-    """Reversal (mV) and kinetics (ms) of the synaptic conductance; rise 0: a single exponential."""
+class Potassium(Part):
+    """Concentrations of potassium, mM."""
 
-    reversal: Potential
+    inside: Concentration
+    outside: Concentration
+
+    def reversal(self, temperature: float) -> float:
+        """Return the reversal, mV, at a temperature in C."""
+        return float(nernst(self.inside, self.outside, 1, temperature))
+
+
+class Chloride(Part):
+    """Concentrations of what a GABA-A receptor passes, mM: chloride and, if given, bicarbonate.
+
+    ``permeability_ratio`` is that of bicarbonate to chloride; the three keys of bicarbonate go
+    together.
+    """
+
+    inside: Concentration
+    outside: Concentration
+    bicarbonate_inside: Concentration | None = None
+    bicarbonate_outside: Concentration | None = None
+    permeability_ratio: Annotated[float, Quantity("number", above=0, high=1)] | None = None
+
+    @model_validator(mode="before")
+    @classmethod
+    def _check_keys(cls, data: Any) -> Any:
+        data = checked_keys(cls.model_fields, data)
+        keys = ("bicarbonate_inside", "bicarbonate_outside", "permeability_ratio")
+        missing = [key for key in keys if isinstance(data, Mapping) and key not in data]
+        if 0 < len(missing) < len(keys):
+            given = next(key for key in keys if key not in missing)
+            raise refusal(f"missing; it goes with {given}", path=(missing[0],), value=None)
+        return data
+
+    @property
+    def bicarbonate(self) -> Bicarbonate:
+        """What passes besides chloride."""
+        inside, outside = self.bicarbonate_inside, self.bicarbonate_outside
+        if inside is None or outside is None or self.permeability_ratio is None:
+            return NONE
+        return Bicarbonate(inside, outside, self.permeability_ratio)
+
+    def reversal(self, temperature: float) -> float:
+        """Return the reversal, mV, at a temperature in C."""
+        return float(gaba_reversal(self.inside, self.outside, temperature, self.bicarbonate))
+
+
+class Receptor(Part):
+    """Reversal (mV) and kinetics (ms) of the synaptic conductance; rise 0: a single exponential.
+
+    The reversal is given in exactly one of four ways, and may be anywhere: an inhibitory synapse
+    may depolarise. `reversal_at` returns it.
+
+    Parameters
+    ----------
+    reversal : mV
+        Itself.
+    chloride : Chloride
+        From concentrations, with `temperature` (C): GABA-A, with or without bicarbonate.
+    potassium : Potassium
+        From concentrations, with `temperature`: GABA-B and other potassium conductances.
+    shunt : bool
+        At the rest of the cell.
+    """
+
+    reversal: Potential | None = None
+    chloride: Chloride | None = None
+    potassium: Potassium | None = None
+    shunt: Flag = False
+    temperature: Annotated[float, Quantity("temperature", low=COLDEST, high=WARMEST)] | None = None
     rise: Time
     decay: Duration
+
+    @model_validator(mode="before")
+    @classmethod
+    def _check_keys(cls, data: Any) -> Any:
+        data = checked_keys(cls.model_fields, data)
+        if not isinstance(data, Mapping):
+            return data
+        ways = ("reversal", "chloride", "potassium", "shunt")
+        given = [way for way in ways if way in data and data[way] is not False]
+        if len(given) != 1:
+            found = " and ".join(given) or "none"
+            raise refusal(f"needs exactly one of {', '.join(ways)}; it has {found}")
+        from_ions = given[0] in ("chloride", "potassium")
+        if from_ions and "temperature" not in data:
+            allowed = f"missing; {given[0]} needs a temperature such as '32 degC'"
+            raise refusal(allowed, path=("temperature",), value=None)
+        if not from_ions and "temperature" in data:
+            allowed = f"goes with chloride or potassium; with {given[0]}, leave it out"
+            raise refusal(allowed, path=("temperature",), value=data["temperature"])
+        return data
+
+    @model_validator(mode="after")
+    def _check_reversal(self) -> Receptor:
+        found = self.reversal_at(0.0)
+        if not POTENTIAL.low <= found <= POTENTIAL.high:
+            key = "chloride" if self.chloride else "potassium"
+            allowed = f"gives a reversal of {found:.4g} mV, which {POTENTIAL.allowed}"
+            raise refusal(allowed, path=(key,), value=None)
+        return self
+
+    def reversal_at(self, rest: float) -> float:
+        """Return the reversal, mV, in a cell that rests at `rest`, mV."""
+        ions = self.chloride or self.potassium
+        if ions is not None and self.temperature is not None:
+            return ions.reversal(self.temperature)
+        return rest if self.reversal is None else self.reversal
 
 
 class BaselineEpsp(Part):

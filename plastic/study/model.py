@@ -163,7 +163,7 @@ class Study(Part):
             return inputs
         found: dict[str, Input] = {}
         for name, it in inputs.items():
-            below = it.receptor.reversal <= cell.threshold.mean
+            below = it.receptor.reversal_at(cell.rest) <= cell.threshold.mean
             kind = it.kind or ("inhibitory" if below else "excitatory")
             found[name] = it.model_copy(update={"kind": kind})
         return found

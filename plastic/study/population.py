@@ -151,11 +151,11 @@ def scene_of(study: Study) -> Scene:
     tree = build_tree(cell.dendrite, places, cell.refine)
     for name, it in study.inputs.items():
         for on, at, share in it.places:
-            contacts.append(_contact(name, it, tree.node_of[on, at], share))
+            contacts.append(_contact(name, it, cell.rest, tree.node_of[on, at], share))
         if it.added_contact:
             node = tree.node_of[it.added_contact.on, it.added_contact.at]
             late = it.delay + it.added_contact.delay
-            added.append(replace(_contact(name, it, node, 1.0), delay=late, added=True))
+            added.append(replace(_contact(name, it, cell.rest, node, 1.0), delay=late, added=True))
     return Scene(
         tree=tree,
         rm=cell.membrane.resistance,
@@ -177,8 +177,8 @@ def scene_of(study: Study) -> Scene:
     )
 
 
-def _contact(name: str, it: Input, node: int, share: float) -> Contact:
-    receptor = Receptor(it.receptor.reversal, it.receptor.rise, it.receptor.decay)
+def _contact(name: str, it: Input, rest: float, node: int, share: float) -> Contact:
+    receptor = Receptor(it.receptor.reversal_at(rest), it.receptor.rise, it.receptor.decay)
     return Contact(
         name,
         node,

@@ -41,6 +41,8 @@ receptor = { reversal = "0 mV", rise = "0.5 ms", decay = "3 ms" }
 location = { on = "soma" }
 driven_by = [ { input = "strong", delay = "2 ms" } ]
 release = { sites = 1, probability = { mean = 1, cv = 0 }, quantum = "15 nS", quantum_cv = 0 }
+# the reversal may also come from concentrations: chloride = { inside = "7 mM", outside = "130 mM" }
+# or potassium = { ... }, with temperature = "32 degC"; or, with shunt = true, from the rest
 receptor = { reversal = "-75 mV", rise = "0.5 ms", decay = "7 ms" }
 
 [protocol.bursts]              # one weak volley before a burst of three strong ones

