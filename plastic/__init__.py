@@ -23,6 +23,7 @@ _DOORS = {
     "run": "plastic.study.run",
     "load": "plastic.study.store",
     "compare": "plastic.report.comparison",
+    "cell_sheet": "plastic.analysis.cell_sheet",
 }
 _ROOMS = ("rules", "routes", "protocols", "measures")
 

@@ -17,12 +17,13 @@ from collections.abc import Sequence
 from types import ModuleType
 
 import plastic
-from plastic.cli import compare, impose, list_, new, run, show
+from plastic.cli import cell, compare, impose, list_, new, run, show
 from plastic.errors import PlasticError
 
 #: name -> (module, one line of help)
 COMMANDS: dict[str, tuple[ModuleType, str]] = {
     "run": (run, "run a study: every rule, route and protocol, in every simulated cell"),
+    "cell": (cell, "print the cell sheet of a study: its inputs one by one and together"),
     "impose": (impose, "apply one rule to spike times from files, without a cell"),
     "compare": (compare, "print the tables of results that are there already"),
     "list": (list_, "list rules, routes, protocols and measures"),

@@ -23,6 +23,9 @@ from plastic.routes._interface import TARGETS, Mixture, Route
 
 TICK = 1000.0  # ms between updates of what is expressed
 
+#: what moves at ticks only, since it concerns more than the contact that learned
+SLOW = ("diameter", "inhibition")
+
 
 @dataclass(frozen=True)
 class Receptor:
@@ -230,6 +233,7 @@ def wire(
             diameter=tree.stretch_diameter,
         ),
         beyond=beyond,
+        eased=_eased(scene, learners),
         groups=table(
             layout.GROUP,
             reversal=[r.reversal - scene.rest for _, r in groups],
@@ -272,6 +276,13 @@ def wire(
     )
 
 
+def _eased(scene: Scene, learners: Sequence[str]) -> Ints:
+    """Return which inhibitory contacts each learning input drives, (learner, contact)."""
+    driven = {(d.driver, d.driven) for d in scene.drives if d.driven in scene.inhibitory}
+    rows = [[int((name, k.input) in driven) for k in scene.contacts] for name in learners]
+    return np.array(rows, dtype=np.int64).reshape(len(learners), len(scene.contacts))
+
+
 def _ints(values: object) -> Ints:
     return np.ascontiguousarray(np.asarray(values, dtype=float), dtype=np.int64)
 
@@ -283,7 +294,7 @@ def _times_of(channel: Route, immediate: bool) -> tuple[float, float]:
 def _tick(route: Mixture | None, dt: float, immediate: bool) -> int:
     """Return the steps between updates of what is expressed; 0: the factor acts at once."""
     channels = [] if route is None else list(route.channels.values())
-    late = any(any(_times_of(c, immediate)) or c.target == "diameter" for c in channels)
+    late = any(any(_times_of(c, immediate)) or c.target in SLOW for c in channels)
     return round(TICK / dt) if late else 0
 
 

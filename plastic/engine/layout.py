@@ -54,6 +54,7 @@ class Wiring(NamedTuple):
     plan: Records  # (1,)
     stretches: Records
     beyond: Ints  # (stretch, contact) 1: the contact lies at or beyond the stretch
+    eased: Ints  # (learner, contact) 1: an inhibitory contact that the learner drives
     groups: Records  # sorted by slot
     slots: Records
     contacts: Records

@@ -14,7 +14,7 @@ from typing import Any
 import numpy as np
 
 from plastic import draws
-from plastic.engine.assembly import TICK, empty_log
+from plastic.engine.assembly import SLOW, TICK, empty_log
 from plastic.engine.layout import Cells, Floats, Log, Records, Wiring
 from plastic.engine.learning import Learner
 from plastic.engine.plain import Membrane, Terminal, kept
@@ -76,9 +76,10 @@ class Expression:
         shares = {} if route is None else route.shares
         self.channels = [(route.channels[n], s) for n, s in shares.items()] if route else []
         self.times = [(0.0, 0.0) if immediate else (c.delay, c.tau) for c, _ in self.channels]
-        widens = any(c.target == "diameter" for c, _ in self.channels)
-        self.at_once = not widens and not any(delay or tau for delay, tau in self.times)
+        slow = any(c.target in SLOW for c, _ in self.channels)
+        self.at_once = not slow and not any(delay or tau for delay, tau in self.times)
         self.contacts, self.base, self.beyond = wiring.contacts, base, wiring.beyond
+        self.eased = wiring.eased.astype(bool)
         self.expressed = np.ones((len(self.channels), len(wiring.learner_site)))
         self.history: list[Floats] = []
         self.multiple = np.ones(len(wiring.stretches))
@@ -114,6 +115,11 @@ class Expression:
         if i >= 0:
             for (channel, share), expressed in zip(self.channels, self.expressed, strict=True):
                 by[channel.target] = float(channel.multiple(expressed[i], share))
+        if self.eased[:, k].any():
+            for (channel, share), expressed in zip(self.channels, self.expressed, strict=True):
+                if channel.target == "inhibition":
+                    mean = expressed[self.eased[:, k]].mean()
+                    by["quantum"] *= float(channel.multiple(mean, share))
         quantum = float(base["quantum"]) * by["quantum"]
         neck = float(one["neck"]) * by["neck"] * 1e-3  # Mohm times nS is a thousandth
         return (

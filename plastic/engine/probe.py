@@ -158,8 +158,9 @@ def run_thresholds(
 ):
     """Fill out (cell, geometry, added) with the own conductance (nS) that just fires the cell.
 
-    `own[o]` is the share of the own conductance at opening o, `added[o]` that of the added one;
-    amounts (cell, opening) holds what else opens. Infinite when `largest` does not fire it.
+    `own[o]` is the share of the own conductance at opening o; added (cell, opening) is what opens
+    per unit of the second axis `added_amounts`, along which the need may only fall; amounts (cell,
+    opening) holds what else opens. Infinite when `largest` does not fire it.
     """
     plan = plans[0]
     cell = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], 1)
@@ -170,7 +171,7 @@ def run_thresholds(
             rebuild(plan, stretches, slots, multiples[m], loads[c], cell)
             for a in range(added_amounts.shape[0]):
                 if a > 0 and out[c, m, a - 1] == 0.0:
-                    out[c, m, a] = 0.0  # the added conductance alone was enough
+                    out[c, m, a] = 0.0  # nothing of its own was needed before
                     continue
                 low, high = 0.0, largest
                 for turn in range(26):
@@ -181,7 +182,7 @@ def run_thresholds(
                         else (0.0 if turn == 1 else math.sqrt(max(low, 1e-3) * high))
                     )
                     for o in range(step.shape[0]):
-                        now[o] = amounts[c, o] + own[o] * middle + added[o] * added_amounts[a]
+                        now[o] = amounts[c, o] + own[o] * middle + added[c, o] * added_amounts[a]
                     fired = run_probe(groups, slots, cell, step, group, now, thresholds[c], trace)
                     if fired >= 0:
                         high = middle

@@ -30,6 +30,8 @@ SCALE = 1.0
 LARGEST = 2000.0
 #: ms of an EPSP that is followed, and within which a spike counts
 EPSP_LENGTH, SPIKE_LENGTH = 150.0, 80.0
+#: what moves beside an input's own conductance
+WIDTH, ADDED, EASED = "the dendrite widens", "a contact is added", "inhibition eases"
 #: trials per reading where the premise of the tables fails
 TRIALS = 200
 
@@ -89,6 +91,11 @@ def state_of(scene: Scene, wiring: Wiring, cells: Cells, route: Mixture, factors
         channel = route.channels[name]
         if channel.target == "diameter":
             width = _widths(wiring, channel, factors[:, :, ch] ** share)
+            continue
+        if channel.target == "inhibition":
+            for eased in np.flatnonzero(wiring.eased.any(axis=0)):
+                drivers = factors[:, :, ch][:, :, wiring.eased[:, eased] == 1]
+                quantum[:, eased] *= channel.multiple(drivers.mean(axis=2), share)
             continue
         for k, i in enumerate(wiring.contacts["learner"]):
             if i < 0:
@@ -257,8 +264,8 @@ class Reader:
                 return f"{contacts[k].input}, which it recruits, releases at random"
         if len(self.own_contacts(name)) > 1:
             return "it lands at several places"
-        if self._varies(name, route) == "both":
-            return "the dendrite widens and a contact is added"
+        if len(self._moving(name, route)) > 1:
+            return " and ".join(self._moving(name, route))
         if self._widened_by_many(route):
             return "several inputs widen the dendrite"
         return ""
@@ -269,19 +276,30 @@ class Reader:
     def _widened_by_many(self, route: Mixture | None) -> bool:
         return "diameter" in self._targets(route) and len(self.scene.learners) > 1
 
+    def _moving(self, name: str, route: Mixture | None) -> list[str]:
+        """Return what moves beside an input's own conductance, in words."""
+        targets, opened = self._targets(route), self.openings(name)
+        moves = {
+            WIDTH: "diameter" in targets,
+            ADDED: "added_sites" in targets and name in self.scene.learners,
+            EASED: "inhibition" in targets and bool(self._eased(opened).any()),
+        }
+        return [what for what, is_so in moves.items() if is_so]
+
     def _varies(self, name: str, route: Mixture | None) -> str:
-        """Return what a table needs beside conductance: "", "width", "added" or "both"."""
-        targets = self._targets(route)
-        width = "diameter" in targets
-        added = "added_sites" in targets and name in self.scene.learners
-        return "both" if width and added else "width" if width else "added" if added else ""
+        """Return what a table needs as its second axis, or nothing."""
+        return next(iter(self._moving(name, route)), "")
+
+    def _eased(self, opened: Openings) -> Floats:
+        """Return 1 for openings of driven inhibition that a learning input may ease."""
+        eased: Ints = self.wiring.eased.max(axis=0, initial=0)
+        return np.asarray(opened.fixed * eased[opened.contact], dtype=float)
 
     # ---- tables
 
     def _width_axis(self, route: Mixture, nodes: int) -> tuple[float, float, Floats]:
         """Return the range of the grown factor and the multiples (node, stretch) along it."""
-        channel = next(c for c in route.channels.values() if c.target == "diameter")
-        wiring = self.wiring
+        channel, wiring = _channel(route, "diameter"), self.wiring
         excites = wiring.contacts["excites"] == 1
         learns = wiring.contacts["learner"] >= 0
         at = wiring.beyond.astype(bool) & excites
@@ -295,15 +313,21 @@ class Reader:
         limited = np.where(widens, np.clip(mean, channel.lowest, channel.highest), 1.0)
         return low, high, np.ascontiguousarray(limited)
 
-    def _grid(self, name: str, route: Mixture | None, nodes: int) -> tuple[object, Floats, Floats]:
+    def _grid(
+        self, name: str, route: Mixture | None, nodes: int
+    ) -> tuple[tuple[str, object], Floats, Floats]:
         """Return a key, the multiples (geometry, stretch) and the added conductances of a table."""
-        varies, key = self._varies(name, route), None
+        varies = self._varies(name, route)
+        key: object = None
         multiples, extra = np.ones((1, len(self.wiring.stretches))), np.zeros(1)
-        if varies == "width" and route is not None:
-            key = next(c for c in route.channels.values() if c.target == "diameter")
+        if varies == WIDTH and route is not None:
+            key = _channel(route, "diameter")
             multiples = self._width_axis(route, nodes)[2]
-        if varies == "added":
+        if varies == ADDED:
             extra = axis(self.added_top, nodes)
+        if varies == EASED and route is not None:
+            key = channel = _channel(route, "inhibition")
+            extra = np.linspace(channel.highest, channel.lowest, nodes)  # ever less inhibition
         return (varies, key), multiples, extra
 
     def _kept(
@@ -323,10 +347,9 @@ class Reader:
         def make() -> tuple[Floats, ...]:
             own = axis(self.top, OWN_NODES)
             pairs = np.array([(g, a) for a in extra for g in own])
+            fixed, second = self._beside(opened, key[0])
             amounts = (
-                self._fixed(opened)[:, None, :]
-                + pairs[None, :, :1] * opened.own
-                + pairs[None, :, 1:] * opened.added
+                fixed[:, None, :] + pairs[None, :, :1] * opened.own + pairs[:, 1:] * second[:, None]
             )
             out = np.zeros((len(self.loads), len(multiples), len(pairs), 4))
             probes().run_shapes(
@@ -356,6 +379,7 @@ class Reader:
 
         def make() -> tuple[Floats, ...]:
             goals = np.zeros((len(self.loads), len(multiples), len(extra)))
+            fixed, second = self._beside(opened, key[0])
             probes().run_thresholds(
                 wiring.plan,
                 wiring.stretches,
@@ -366,9 +390,9 @@ class Reader:
                 multiples,
                 opened.step,
                 wiring.contacts["group"][opened.contact].copy(),
-                self._fixed(opened),
+                fixed,
                 opened.own,
-                opened.added,
+                second,
                 extra,
                 LARGEST,
                 round(SPIKE_LENGTH / self.scene.dt),
@@ -378,11 +402,20 @@ class Reader:
 
         return self._kept(("goal", name, inhibition, key), make)[0]
 
-    def _fixed(self, opened: Openings) -> Floats:
-        """Return what the driven inputs open, at their mean: (cell, opening) in nS."""
+    def _beside(self, opened: Openings, varies: str) -> tuple[Floats, Floats]:
+        """Return what opens beside the own conductance, each (cell, opening).
+
+        First what always opens (nS), the driven inputs at their mean; then what opens per unit of
+        the table's second axis: of an added conductance (nS), or of eased inhibition (multiples).
+        """
         release = self.cells.release[:, opened.contact]
         mean = release["sites"] * release["probability"] * self.quantum[:, opened.contact]
-        return np.ascontiguousarray(mean * opened.fixed)
+        driven = mean * opened.fixed
+        if varies == EASED:
+            eased = self._eased(opened)
+            return np.ascontiguousarray(driven * (1 - eased)), np.ascontiguousarray(driven * eased)
+        added = np.tile(opened.added, (len(self.loads), 1))
+        return np.ascontiguousarray(driven), added
 
     def peaks(self, name: str) -> Floats:
         """Return the EPSP peak (mV) over the table's own conductances, (cell, node)."""
@@ -393,9 +426,15 @@ class Reader:
     def _across(self, name: str, route: Mixture | None, state: State, nodes: int) -> Floats | None:
         """Return the position of every reading on the table's second axis."""
         varies = self._varies(name, route)
-        if varies == "added":
+        if varies == ADDED:
             return position(state.conductance(self.added_contacts(name)), self.added_top, nodes)
-        if varies != "width" or route is None:
+        if varies == EASED and route is not None:
+            channel, opened = _channel(route, "inhibition"), self.openings(name)
+            k = opened.contact[np.flatnonzero(self._eased(opened))[0]]
+            left = state.quantum[:, k] / self.quantum[:, k, None]
+            share = (channel.highest - left) / (channel.highest - channel.lowest)
+            return np.asarray(np.clip(share, 0.0, 1.0) * (nodes - 1), dtype=float)
+        if varies != WIDTH or route is None:
             return None
         low, high, limited = self._width_axis(route, nodes)
         # the stretch that is limited last tells the grown factor apart over the whole range
@@ -409,7 +448,7 @@ class Reader:
         self, name: str, route: Mixture | None, state: State, *, inhibition: bool = True
     ) -> Shape:
         """Return the EPSP of an input alone at every reading, at the mean of its release."""
-        if self._varies(name, route) == "both" or self._widened_by_many(route):
+        if len(self._moving(name, route)) > 1 or self._widened_by_many(route):
             return self._direct_shape(name, state, inhibition)
         peak, rise, half = self._shapes(name, route, inhibition)
         along = position(state.conductance(self.own_contacts(name)), self.top, OWN_NODES)
@@ -467,7 +506,7 @@ class Reader:
             return (state.conductance(own) >= goal).astype(float)
         cv = float(self.wiring.contacts["cv"][own[0]])
         out = np.zeros(mine.shape[:2])
-        if self._varies(name, route) == "added":
+        if self._varies(name, route) == ADDED:
             goals = self._goals(name, route, inhibition)
             roots, weights = np.polynomial.hermite_e.hermegauss(9)
             probes().run_two_contacts(
@@ -534,6 +573,11 @@ class Reader:
             out,
         )
         return np.asarray(out[:, 0, 0, 0] / weak, dtype=float)
+
+
+def _channel(route: Mixture, target: str) -> Route:
+    """Return the channel of a route that moves one physical variable."""
+    return next(c for c in route.channels.values() if c.target == target)
 
 
 def _release(state: State, contact: int) -> Floats:

@@ -272,6 +272,26 @@ def express_all(contacts, base, channels, expressed, now):
 
 
 @compiled
+def ease(contacts, base, eased, channels, expressed, now):
+    """Set the quantum of every inhibitory contact that a learning input drives."""
+    for ch in range(channels.shape[0]):
+        one = channels[ch]
+        if one.target != 6:
+            continue
+        for k in range(contacts.shape[0]):
+            total, number = 0.0, 0
+            for i in range(eased.shape[0]):
+                if eased[i, k] == 1:
+                    total += max(expressed[ch, i], 0.0)
+                    number += 1
+            if number > 0:
+                q = base[k].quantum * powered(
+                    total / number, one.exponent, False, one.lowest, one.highest
+                )
+                now[k, 2] = q / (1.0 + q * contacts[k].neck * 1e-3)
+
+
+@compiled
 def widen(stretches, beyond, contacts, channels, expressed, multiple):
     """Set the diameter of every stretch on the path; return whether any moved by 1e-4."""
     moved = False
@@ -417,6 +437,8 @@ def run_cell(w, cells, log, c, stop):
         memory[k, 1] = 1.0
         memory[k, 3] = -1e300
         sure[k] = certain(contacts, base, channels, k, deterministic, tick == 0)
+        if tick > 0 and w.eased[:, k].any():
+            sure[k] = -1.0  # its quantum may be eased
 
     # spikes on their way to the sites
     pending, amplitude = np.full((n_sites, 64), -1, np.int64), np.zeros((n_sites, 64))
@@ -479,6 +501,7 @@ def run_cell(w, cells, log, c, stop):
                 ticks += 1
                 next_tick += tick
             express_all(contacts, base, channels, expressed, now)
+            ease(contacts, base, w.eased, channels, expressed, now)
             if moved:
                 rebuild(plan, stretches, slots, multiple, cell.load, m)
         while next_reading == step:

@@ -88,6 +88,7 @@ def _facts(part: Any) -> list[list[str]]:
             ("measured at", f"{part.dose} repeats" if part.dose else "no counted protocol"),
             ("spread over cells", ", ".join(part.amplitudes)),
             ("illustrative", part.illustrative),
+            ("in silence", part.in_silence),
         ]
     if inspect.isclass(part) and issubclass(part, Route):
         facts += [

@@ -25,7 +25,7 @@ from numpy.typing import ArrayLike, NDArray
 from plastic.errors import Misfit
 from plastic.parameters import Parametrised, parameter
 
-Target = Literal["probability", "quantum", "sites", "neck", "added_sites", "diameter"]
+Target = Literal["probability", "quantum", "sites", "neck", "added_sites", "diameter", "inhibition"]
 
 #: the physical variables a factor may move; the order is the engine's code for them
 TARGETS: tuple[Target, ...] = (
@@ -35,6 +35,7 @@ TARGETS: tuple[Target, ...] = (
     "neck",
     "added_sites",
     "diameter",
+    "inhibition",
 )
 
 

@@ -169,26 +169,29 @@ def _check_routes(judge: _Judge) -> None:
     labels = [route.name for route in study.compare.routes]
     if study.compare.controls_on is not None:
         judge.known("route", study.compare.controls_on, labels, "compare.controls_on")
-    learners = [(name, study.inputs[name]) for name in study.compare.learns]
     for k, route in enumerate(study.compare.routes):
         targets = {channel.target for channel in route.channels.values()}
-        for name, it in learners:
-            for key, missing in _needs(it).items():
+        for name in study.compare.learns:
+            for key, missing in _needs(study, name).items():
                 if key in targets:
                     where, allowed = missing
                     allowed = f"{allowed}, or take compare.routes[{k}] ({route.name}) out"
-                    raise judge.refuse(f"input.{name}.{where}", None, allowed)
+                    raise judge.refuse(f"input.{name}{where}", None, allowed)
 
 
-def _needs(it: Input) -> dict[str, tuple[str, str]]:
+def _needs(study: Study, name: str) -> dict[str, tuple[str, str]]:
     """Return what an input lacks, by the physical variable that a route would move."""
     lacks: dict[str, tuple[str, str]] = {}
+    it, inputs = study.inputs[name], study.inputs
+    recruited = [n for n in study.inhibitory if name in {d.input for d in inputs[n].driven_by}]
+    if not recruited:
+        lacks["inhibition"] = "", "needs an inhibitory input with driven_by this one"
     if it.added_contact is None:
-        lacks["added_sites"] = "added_contact", "missing; write { on = 'NAME', at = '40 um' }"
+        lacks["added_sites"] = ".added_contact", "missing; write { on = 'NAME', at = '40 um' }"
     if it.neck == 0:
-        lacks["neck"] = "neck", "missing; write a resistance such as '100 Mohm'"
+        lacks["neck"] = ".neck", "missing; write a resistance such as '100 Mohm'"
     if all(on == SOMA for on, _, _ in it.places):
-        lacks["diameter"] = "location", "must be on a dendrite to be widened"
+        lacks["diameter"] = ".location", "must be on a dendrite to be widened"
     return lacks
 
 

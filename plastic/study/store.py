@@ -28,6 +28,7 @@ from numpy.typing import NDArray
 
 from plastic.errors import StoreError
 from plastic.protocols import Schedule
+from plastic.study.accuracy import accuracy_of
 from plastic.study.block import Arrays, read_inputs
 from plastic.study.grid import Arm, Grid, reading_times
 from plastic.study.model import Study
@@ -413,8 +414,9 @@ def _attributes(file: Any, study: Study, population: Population) -> None:
             "plastic_version": VERSION,
             "versions": _versions(),
             "dt": study.dt,
-            "solver": "exact propagator of the passive membrane, conductances by symmetric (second "
-            "order) splitting, spikes on the grid of steps, quiet stretches jumped exactly",
+            "solver": "exact propagator of the passive membrane, synaptic currents held over the "
+            "step (implicit, second order), spikes on the grid of steps, quiet stretches jumped "
+            "exactly",
             "criterion": f"{criterion.input} alone fires the cell with probability >= "
             f"{criterion.alone_fires:g}",
             "criterion_input": criterion.input,
@@ -426,5 +428,6 @@ def _attributes(file: Any, study: Study, population: Population) -> None:
             "rest": study.cell.rest,
             "baseline_epsp_not_recruited": short,
             "source": "simulated cells; parameters drawn with the spread the study states",
+            **accuracy_of(study).attributes(),
         }
     )

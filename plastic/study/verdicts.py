@@ -25,7 +25,7 @@ VERDICTS = (
 )
 REACHED, LOST, NOT_WITHIN, ALREADY, DEPRESSED, PARTNER, NEVER = range(7)
 
-#: why never; the first seven are what a limit of a route says of itself
+#: why never: limits of routes, and what no route can lift
 CAUSES = (
     "none",
     "release_probability_at_its_limit",
@@ -41,6 +41,8 @@ CAUSES = (
     "rule_at_its_own_bound",
     "several_limits_together",
     "without_a_neck_and_still_too_small",
+    "inhibition_at_its_limit",
+    "without_inhibition_and_still_too_small",
 )
 _LIMIT_OF = {
     "probability": 1,
@@ -49,8 +51,10 @@ _LIMIT_OF = {
     "neck": 4,
     "added_sites": 5,
     "diameter": 6,
+    "inhibition": 14,
 }
 INHIBITION, CERTAIN, BEST_DIAMETER, DISTANCE, RULE_BOUND, SEVERAL, NO_NECK = range(7, 14)
+NO_INHIBITION = 15
 
 #: below this share of repeats with a spike of the cell, the pairing did not happen
 PARTNER_SHARE = 0.5
@@ -178,6 +182,8 @@ def _intrinsic(route: Mixture) -> int:
         return CERTAIN
     if targets <= {"diameter", "probability", "neck"} and "diameter" in targets:
         return BEST_DIAMETER
+    if targets == {"inhibition"}:
+        return NO_INHIBITION
     return NO_NECK if targets == {"neck"} else DISTANCE
 
 

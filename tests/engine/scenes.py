@@ -14,7 +14,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from plastic import routes, rules
+from plastic import impose, routes, rules
 from plastic.engine import layout
 from plastic.engine.assembly import (
     Contact,
@@ -91,10 +91,20 @@ class Forgetful(Rule):
 
 
 def strong(name: str, times: float = 20.0) -> Rule:
-    """Return a rule of the catalogue whose amplitudes are many times the published ones."""
+    """Return a rule of the catalogue whose amplitudes are many times the published ones.
+
+    A slow rule is doubled until three seconds of bursts move it by a tenth.
+    """
     rule = rules.find(name)
     declared = {n: rule.parameters[n] for n in rule.amplitudes}
-    return rule(**{n: min(times * d.default, d.high) for n, d in declared.items()})
+    pre = 350.0 * np.arange(9)
+    post = np.sort((pre[:, None] + [10.0, 18.0, 26.0]).ravel())
+    for doubled in range(20):
+        by = times * 2**doubled
+        made = rule(**{n: min(by * d.default, d.high) for n, d in declared.items()})
+        if abs(float(impose(made, pre, post, compiled=False).factor[0, -1]) - 1) > 0.1:
+            return made
+    raise AssertionError(f"{name} cannot be made strong")
 
 
 #: every rule of the catalogue, strong, and one that does what they do not

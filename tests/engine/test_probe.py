@@ -52,7 +52,8 @@ def thresholds(
     `fixed` (nS) opens at every contact; the last contact opens `added` nS in turn.
     """
     w, n = reader.wiring, len(step)
-    own, last = np.eye(n)[0], np.eye(n)[-1] * (len(added) > 1)
+    own = np.eye(n)[0]
+    last = np.tile(np.eye(n)[-1] * (len(added) > 1), (len(reader.loads), 1))
     amounts = np.repeat(np.array([fixed], dtype=float), len(reader.loads), axis=0)
     out = np.zeros((len(reader.loads), 1, len(added)))
     probes().run_thresholds(

@@ -1,4 +1,4 @@
-"""The time course of a conductance: limits, symmetry, peak and area."""
+"""The time course of a conductance, its block by magnesium, and named receptors: laws."""
 
 from __future__ import annotations
 
@@ -10,7 +10,16 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 from scipy.integrate import quad
 
-from plastic.membrane.receptors import area, conductance, norm, peak_time
+from plastic.membrane.receptors import (
+    KINETICS,
+    MAGNESIUM,
+    area,
+    at_temperature,
+    conductance,
+    norm,
+    peak_time,
+    phi,
+)
 
 constants = st.tuples(st.floats(0.05, 20), st.floats(0.05, 200))
 
@@ -96,3 +105,79 @@ def test_shapes_broadcast() -> None:
 def test_impossible_time_constants_are_refused(rise: float, decay: float) -> None:
     with pytest.raises(ValueError, match="rise >= 0 and decay > 0 expected"):
         conductance(1.0, rise, decay)
+
+
+@given(st.floats(-50, 50))
+@settings(max_examples=60, deadline=None)
+def test_phi_is_the_mean_of_a_decaying_exponential(z: float) -> None:
+    """The integral of e^(-z x) over x from 0 to 1 (scipy)."""
+    mean = quad(lambda x: np.exp(-z * x), 0, 1, epsabs=0, epsrel=1e-12)[0]
+    assert phi(np.float64(z)) == pytest.approx(mean, rel=1e-10)
+
+
+# ---- magnesium
+
+every_block = pytest.mark.parametrize("name", MAGNESIUM)
+
+
+@every_block
+def test_without_magnesium_nothing_is_blocked(name: str) -> None:
+    block = MAGNESIUM[name]
+    assert block.unblocked([-300.0, -70, 40], 0.0).tolist() == [1, 1, 1]
+    assert block.unblocked([-70.0], 1e-9) == pytest.approx([1], abs=1e-6)
+    assert block.half(0.0) == -np.inf
+
+
+@every_block
+def test_half_is_blocked_at_the_half_voltage_and_the_two_sides_mirror(name: str) -> None:
+    """B(V_half + x) + B(V_half - x) = 1: the curve is a logistic one."""
+    block, mg = MAGNESIUM[name], np.array([0.1, 1.0, 2.0])
+    assert block.unblocked(block.half(mg), mg) == pytest.approx(0.5, rel=1e-12)
+    sides = block.unblocked(block.half(mg) + 30, mg) + block.unblocked(block.half(mg) - 30, mg)
+    assert sides == pytest.approx(1, rel=1e-12)
+
+
+@every_block
+def test_the_block_is_lifted_by_voltage_and_deepened_by_magnesium(name: str) -> None:
+    v, mg = np.linspace(-120, 60, 50), np.array([0.1, 0.5, 1, 2, 10])
+    share = MAGNESIUM[name].unblocked(v[:, None], mg)
+    assert share.shape == (50, 5)
+    assert np.all(np.diff(share, axis=0) > 0)
+    assert np.all(np.diff(share, axis=1) < 0)
+
+
+@every_block
+def test_a_change_of_magnesium_only_shifts_the_curve(name: str) -> None:
+    """Tenfold magnesium: by ln(10)/slope."""
+    block, v = MAGNESIUM[name], np.linspace(-100, 40, 15)
+    shifted = block.unblocked(v - np.log(10) / block.slope, 0.2)
+    assert block.unblocked(v, 2.0) == pytest.approx(shifted, rel=1e-12)
+
+
+def test_the_block_does_not_overflow() -> None:
+    block = MAGNESIUM["jahr_stevens"]
+    assert block.unblocked([-1e5, 1e5], 1.0).tolist() == [0, 1]
+
+
+@pytest.mark.parametrize("magnesium", [-0.1, float("nan")])
+def test_impossible_magnesium_is_refused(magnesium: float) -> None:
+    with pytest.raises(ValueError, match=r"magnesium = .* mM: must be 0 or more"):
+        MAGNESIUM["jahr_stevens"].unblocked(-70.0, magnesium)
+
+
+# ---- named receptors
+
+
+@pytest.mark.parametrize("name", KINETICS)
+def test_a_named_receptor_has_a_time_course_and_a_source(name: str) -> None:
+    kinetics = KINETICS[name]
+    assert 0 < peak_time(kinetics.rise, kinetics.decay) < kinetics.decay
+    assert any(word in kinetics.source for word in ("looked up", "from memory", "common practice"))
+
+
+def test_warmth_shortens_a_time_constant_by_its_factor_per_ten_degrees() -> None:
+    assert at_temperature([6.0, 30.0], 2.1, 25, 35) == pytest.approx([6 / 2.1, 30 / 2.1], rel=1e-14)
+    there = at_temperature(6.0, 3.0, 22, 37)
+    assert at_temperature(there, 3.0, 37, 22) == pytest.approx(6, rel=1e-14)
+    with pytest.raises(ValueError, match="q10 = 0"):
+        at_temperature(6.0, 0.0, 22, 37)

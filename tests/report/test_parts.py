@@ -67,6 +67,11 @@ def test_an_illustrative_rule_says_why():
     assert "illustrative" not in text_of("pair_timing")
 
 
+def test_a_rule_that_moves_in_silence_says_why():
+    assert "activity block" in text_of("synaptic_scaling")
+    assert "in silence" not in text_of("pair_timing")
+
+
 def test_an_unknown_name_is_answered_with_the_nearest():
     with pytest.raises(UnknownName, match="did you mean 'pair_timing'"):
         show_grids("pair_timings")

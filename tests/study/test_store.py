@@ -111,8 +111,11 @@ def test_a_full_disk_is_one_clear_error_and_leaves_no_half_written_file(
     xr.testing.assert_identical(plastic.run(study(), out=out), plastic.run(study()))
 
 
-def test_a_disk_that_really_takes_no_more_is_one_line_and_no_crash(tmp_path: Path) -> None:
+def test_a_disk_that_really_takes_no_more_is_one_line_and_no_crash(
+    tmp_path: Path, finished: Path
+) -> None:
     """With a limit on the size of a file, every road to the disk fails as on a full one."""
+    assert finished.exists()  # its run compiled the rules: they are not to be kept on such a disk
     (tmp_path / "bundles.toml").write_text(text(CONTROLS))
     code = (
         "import resource, sys; from plastic.cli import main\n"
