@@ -277,8 +277,12 @@ def wire(
 
 
 def _eased(scene: Scene, learners: Sequence[str]) -> Ints:
-    """Return which inhibitory contacts each learning input drives, (learner, contact)."""
-    driven = {(d.driver, d.driven) for d in scene.drives if d.driven in scene.inhibitory}
+    """Return which inhibitory contacts each learning input drives, (learner, contact).
+
+    An inhibitory input that learns itself is left to its own rule.
+    """
+    eased = set(scene.inhibitory) - set(learners)
+    driven = {(d.driver, d.driven) for d in scene.drives if d.driven in eased}
     rows = [[int((name, k.input) in driven) for k in scene.contacts] for name in learners]
     return np.array(rows, dtype=np.int64).reshape(len(learners), len(scene.contacts))
 

@@ -165,10 +165,10 @@ PASTED = (
     "express",
     "release",
     "mean_open",
-    "inject",
+    "hold_currents",
     "eliminate",
     "fade",
-    "apply",
+    "advance",
     "highest_of",
 )
 

@@ -17,11 +17,11 @@ from plastic.engine.steps import (  # noqa: F401 - some are used by what is past
     U2,
     U3,
     U4,
-    apply,
+    advance,
     compiled,
     eliminate,
     fade,
-    inject,
+    hold_currents,
     kept,
     mean_open,
     new_membrane,
@@ -49,7 +49,16 @@ def run_probe(
     past its last peak: an excitatory conductance can lift it once more when inhibition is over, so
     each is given three of its time constants. What is left of the trace stays at the last value.
     """
-    v, out, slow, fast, single = m.v, m.out, m.slow, m.fast, m.powers[0]
+    v, slow, fast, single, here = m.v, m.slow, m.fast, m.powers[0], U0
+    there = np.uintp(m.leak.shape[0])
+    total, drive, which, matrix, current, spread = (
+        m.total,
+        m.drive,
+        m.which,
+        m.matrix,
+        m.current,
+        m.spread,
+    )
     for node in range(v.shape[0]):
         v[node] = 0.0
     for g in range(slow.shape[0]):
@@ -63,12 +72,12 @@ def run_probe(
     enough = 0.9 if threshold < 1e300 else 0.45
     step = 0
     while step < trace.shape[0]:
-        trace[step] = v[0]
-        if v[0] >= threshold:
+        trace[step] = v[here]
+        if v[here] >= threshold:
             fired = step
             break
-        top = max(top, v[0])
-        if step > lifted and v[0] < enough * top:
+        top = max(top, v[here])
+        if step > lifted and v[here] < enough * top:
             break
         while o < open_step.shape[0] and open_step[o] == step:
             g = open_group[o]
@@ -77,14 +86,14 @@ def run_probe(
             if groups[g].keep_rise > 0.0:
                 fast[g] += scaled
             o += 1
-        mean_open(groups, slots, slow, fast, m.total, m.drive)
-        apply(single, v, out)
-        inject(slots, m.spread, m.total, m.drive, v, out, m.which, m.matrix, m.current)
-        v, out = out, v
+        mean_open(groups, slots, slow, fast, total, drive)
+        n_open = hold_currents(single, slots, spread, total, drive, v, here, which, matrix, current)
+        advance(single, spread, which, current, n_open, v, here, there)
+        here, there = there, here
         _open = fade(groups, slow, fast)
         step += 1
     for rest in range(step, trace.shape[0]):
-        trace[rest] = v[0]
+        trace[rest] = v[here]
     return fired
 
 

@@ -19,7 +19,7 @@ R30, R27, R31, R11 = np.uint64(30), np.uint64(27), np.uint64(31), np.uint64(11)
 ONE, PARTS = np.uint64(1), np.uint64(4096)
 FRACTION, NORMAL_A, NORMAL_B, REFILL = 2045, 2046, 2047, 2048
 DOUBLINGS = 26  # powers of two of one step that a jump may use
-CUT = 1e-5  # nS: a conductance below it is over
+CUT = 1e-4  # nS: a conductance below it is over; it moves a soma by a microvolt at most
 
 #: unsigned: a signed index is tested for being negative at every access
 U0, U1, U2, U3, U4 = (np.uintp(k) for k in range(5))
@@ -199,7 +199,9 @@ def padded(n):
 class Membrane(NamedTuple):
     """The arrays of one cell's membrane: its matrices, its state, and room to work in.
 
-    `size` is the number of nodes, padded; leak and conductance in nS, v in mV over rest.
+    `size` is the number of nodes, padded; leak and conductance in nS, v in mV over rest. The two
+    halves of v change places with every step, by their offsets: to swap two arrays costs numba as
+    much as the step.
     """
 
     leak: Any  # (size,)
@@ -207,8 +209,7 @@ class Membrane(NamedTuple):
     powers: Any  # (doublings, size, size) propagators of 1, 2, 4 ... steps, transposed
     spread: Any  # (slot, size) mV per pA
     work: Any  # (4, size, size)
-    v: Any  # (size,)
-    out: Any  # (size,) v after a step
+    v: Any  # (2 size,) before and after a step, in turn
     slow: Any  # (group,) nS
     fast: Any  # (group,) nS
     total: Any  # (slot,) nS
@@ -228,8 +229,7 @@ def new_membrane(nodes, groups, slots, doublings):
         np.zeros((doublings, size, size)),
         np.zeros((slots, size)),
         np.zeros((4, size, size)),
-        np.zeros(size),
-        np.zeros(size),
+        np.zeros(2 * size),
         np.zeros(groups),
         np.zeros(groups),
         np.zeros(slots),
@@ -250,44 +250,55 @@ def rebuild(plan, stretches, slots, multiple, load, m):
 
 
 @compiled
-def apply(turned, v, out):
-    """Write the product of a matrix, given transposed, and v into out; four rows at a time."""
-    if v.shape[0] == 1:
-        out[0] = turned[0, 0] * v[0]
-    else:
-        n, row = np.uintp(v.shape[0]), U0
-        while row < n:
-            one = two = three = four = 0.0
-            col = U0
-            while col < n:
-                x = v[col]
-                one += turned[col, row] * x
-                two += turned[col, row + U1] * x
-                three += turned[col, row + U2] * x
-                four += turned[col, row + U3] * x
-                col += U1
-            out[row] = one
-            out[row + U1] = two
-            out[row + U2] = three
-            out[row + U3] = four
-            row += U4
+def advance(turned, spread, which, current, n_open, v, here, there):
+    """Write the voltages after a step to v[there:], from those at v[here:]; four rows at a time.
+
+    The quiet step (a matrix, given transposed) and what the held currents leave.
+    """
+    n, row = np.uintp(turned.shape[0]), U0
+    if n == U1:
+        v[there] = turned[0, 0] * v[here]
+        for a in range(n_open):
+            v[there] += spread[which[a], 0] * current[a]
+        row = n
+    while row < n:
+        one = two = three = four = 0.0
+        for a in range(n_open):
+            slot, held = np.uintp(which[a]), current[a]
+            one += spread[slot, row] * held
+            two += spread[slot, row + U1] * held
+            three += spread[slot, row + U2] * held
+            four += spread[slot, row + U3] * held
+        col = U0
+        while col < n:
+            x = v[here + col]
+            one += turned[col, row] * x
+            two += turned[col, row + U1] * x
+            three += turned[col, row + U2] * x
+            four += turned[col, row + U3] * x
+            col += U1
+        v[there + row] = one
+        v[there + row + U1] = two
+        v[there + row + U2] = three
+        v[there + row + U3] = four
+        row += U4
 
 
 @compiled
-def jump(powers, steps, v, out):
-    """Take `steps` quiet steps at once, exactly."""
-    if steps >> powers.shape[0] > 0:
+def jump(m, steps, here, there):
+    """Take `steps` quiet steps at once, exactly; return where the voltages are now."""
+    if steps >> m.powers.shape[0] > 0:
         steps = 0  # two hours and more: below the smallest number
-        for node in range(v.shape[0]):
-            v[node] = 0.0
+        for node in range(m.v.shape[0]):
+            m.v[node] = 0.0
     j = 0
     while steps > 0:
         if steps & 1:
-            apply(powers[j], v, out)
-            for node in range(v.shape[0]):
-                v[node] = out[node]
+            advance(m.powers[j], m.spread, m.which, m.current, 0, m.v, here, there)
+            here, there = there, here
         steps >>= 1
         j += 1
+    return here
 
 
 @compiled
@@ -309,40 +320,39 @@ def mean_open(groups, slots, slow, fast, total, drive):
 
 
 @compiled
-def inject(slots, spread, total, drive, v, out, which, matrix, current):
-    """Add to out, the quiet step from v, the currents of the open conductances.
+def hold_currents(turned, slots, spread, total, drive, v, here, which, matrix, current):
+    """Set the current (pA) of every open slot, held over the step; return how many are open.
 
-    The current I into a slot's node is held over the step, so that its charge reaches every node
-    exactly. It meets the voltage between v and the end of the step, out + sum of spread I, weighted
-    1 : 1 + x with x = total spread: second order in the step, and for large x the node goes to the
-    reversal without ringing (the step function of one node is 1 / (1 + x + x^2 / 2)). The equations
-    of slots that are open together are solved together; they need no pivots, since each is a
-    positive multiple of a symmetric positive one.
+    Held, its charge reaches every node exactly. It meets the voltage between the start of the step
+    and its end, quiet + sum of spread I, weighted 1 : 1 + x with x = total spread: second order in
+    the step, and for large x the node goes to the reversal without ringing (the step function of
+    one node is 1 / (1 + x + x^2 / 2)). The equations of slots that are open together are solved
+    together; they need no pivots, since each is a positive multiple of a symmetric positive one.
     """
-    n_open = 0
+    n_open, n = 0, np.uintp(turned.shape[0])
     for slot in range(slots.shape[0]):
         if total[slot] > 0.0:
+            node, g = np.uintp(slots[slot].node), total[slot]
+            quiet, col = 0.0, U0
+            while col < n:
+                quiet += turned[col, node] * v[here + col]
+                col += U1
+            x = g * spread[slot, node]
             which[n_open] = slot
+            current[n_open] = (2.0 + x) * drive[slot] - g * ((1.0 + x) * quiet + v[here + node])
+            matrix[n_open, n_open] = 2.0 + x * (2.0 + x)
             n_open += 1
-    for a in range(n_open):
-        slot = which[a]
-        node, g = slots[slot].node, total[slot]
-        x = g * spread[slot, node]
-        current[a] = (2.0 + x) * drive[slot] - g * ((1.0 + x) * out[node] + v[node])
-        if n_open == 1:
-            current[a] /= 2.0 + x * (2.0 + x)
-        else:
+    if n_open == 1:
+        current[0] *= 1.0 / matrix[0, 0]
+    elif n_open > 1:
+        for a in range(n_open):
+            node, g = np.uintp(slots[which[a]].node), total[which[a]]
+            x = g * spread[which[a], node]
             for b in range(n_open):
-                matrix[a, b] = (1.0 + x) * g * spread[which[b], node]
-            matrix[a, a] += 2.0 + x
-    if n_open > 1:
+                if b != a:
+                    matrix[a, b] = (1.0 + x) * g * spread[which[b], node]
         eliminate(matrix, current, n_open)
-    for a in range(n_open):
-        shared, held = np.uintp(which[a]), current[a]
-        at = U0
-        while at < np.uintp(out.shape[0]):
-            out[at] += spread[shared, at] * held
-            at += U1
+    return n_open
 
 
 @compiled
@@ -379,11 +389,11 @@ def fade(groups, slow, fast):
 
 
 @compiled
-def highest_of(v):
-    """Return the largest deviation from rest."""
-    top = v[0]
-    for node in range(1, v.shape[0]):
-        top = max(top, v[node])
+def highest_of(v, here, n):
+    """Return the largest deviation from rest of the n nodes at v[here:]."""
+    top = v[here]
+    for node in range(1, n):
+        top = max(top, v[here + np.uintp(node)])
     return top
 
 

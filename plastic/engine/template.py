@@ -35,13 +35,13 @@ from plastic.engine.steps import (  # noqa: F401 - some are used by what is past
     U2,
     U3,
     U4,
-    apply,
+    advance,
     binomial,
     compiled,
     eliminate,
     fade,
     highest_of,
-    inject,
+    hold_currents,
     jump,
     kept,
     mean_open,
@@ -398,7 +398,9 @@ def run_cell(w, cells, log, c, stop):
 
     # membrane
     m = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], DOUBLINGS)
-    v, out, slow, fast, spread, size = m.v, m.out, m.slow, m.fast, m.spread, m.v.shape[0]
+    v, slow, fast, spread, size = m.v, m.slow, m.fast, m.spread, m.leak.shape[0]
+    total, drive, which, matrix, current = m.total, m.drive, m.which, m.matrix, m.current
+    here, there = U0, np.uintp(size)
     multiple = np.ones(stretches.shape[0])
     rebuild(plan, stretches, slots, multiple, cell.load, m)
     single = m.powers[0]
@@ -457,11 +459,11 @@ def run_cell(w, cells, log, c, stop):
             injected = True
             e += 1
             next_event = events[e].step if e < n_events else n_steps + 1
-        if step >= free and (injected or v[0] >= threshold):
+        if step >= free and (injected or v[here] >= threshold):
             if ended.spikes < spike_step.shape[0]:
                 spike_step[ended.spikes] = step
             ended.spikes += 1
-            v[0] = plan.reset
+            v[here] = plan.reset
             free = step + plan.refractory
             train = 1.0 - (1.0 - train) * math.exp((last_spike - step * dt) / plan.bap_recovery)
             for site in range(n_sites):
@@ -617,33 +619,47 @@ def run_cell(w, cells, log, c, stop):
             break
 
         # 5. one step of the membrane, or a jump to the next thing due
-        if not some_open and not clocked and step >= free and highest_of(v) < threshold:
+        if not some_open and not clocked and step >= free and highest_of(v, here, size) < threshold:
             goal = min(min(n_steps, next_event), min(next_reading, next_arrival))
             if RATES and closes >= 0:
                 goal = min(goal, min(closes, next_tick))  # a tick reads what was before it
             if HAS_FLOW:
                 goal = min(goal, next_tick)  # a tick reads what flowed up to it
-            jump(m.powers, goal - step, v, out)
+            here = jump(m, goal - step, here, there)
+            there = np.uintp(size) - here
             step = goal
             continue
         if some_open:
-            mean_open(groups, slots, slow, fast, m.total, m.drive)
-            if size == 1:  # what `inject` does to one node: one product and one sum wait for v
+            mean_open(groups, slots, slow, fast, total, drive)
+            if (
+                size == 1
+            ):  # what `hold_currents` does to one node: one product and one sum wait for v
                 decay = single[0, 0]
-                x = m.total[0] * spread[0, 0]
+                x = total[0] * spread[0, 0]
                 share = 1.0 / (2.0 + x * (2.0 + x))
                 gain = decay - x * ((1.0 + x) * decay + 1.0) * share
-                v[0] = gain * v[0] + spread[0, 0] * (2.0 + x) * m.drive[0] * share
+                v[here] = gain * v[here] + spread[0, 0] * (2.0 + x) * drive[0] * share
             else:
-                apply(single, v, out)
-                inject(slots, spread, m.total, m.drive, v, out, m.which, m.matrix, m.current)
-                v, out = out, v
+                n_open = hold_currents(
+                    single,
+                    slots,
+                    spread,
+                    total,
+                    drive,
+                    v,
+                    here,
+                    which,
+                    matrix,
+                    current,
+                )
+                advance(single, spread, which, current, n_open, v, here, there)
+                here, there = there, here
             some_open = fade(groups, slow, fast)
         else:
-            apply(single, v, out)
-            v, out = out, v
+            advance(single, spread, which, current, 0, v, here, there)
+            here, there = there, here
         if step < free:
-            v[0] = plan.reset
+            v[here] = plan.reset
         step += 1
         taken += 1
     ended.steps = taken

@@ -42,6 +42,13 @@
     opened. ``pre_is`` says which presynaptic moment counts:
     the "spike" at the stimulated axon or its "arrival" at the contact.
 
+8.  In a silent cell nothing moves: a baseline is silent, and its end is what changes are compared
+    with. A rule that does move there says why in ``in_silence``.
+
+9.  What a rule is for it says in ``claims``; which laws of ``plastic check`` it is exempt from, and
+    why, in ``exempt``; which optional ones it keeps in ``promises``. A parameter of unit "1" that
+    carries a power of a rate, as eta in eta x y, says so in ``rate_powers``: {"eta": -2}.
+
 Hooks are compiled as they stand. They may use arithmetic, comparisons, ``if``, local names and
 ``math``; nothing global, nothing that remembers. Ordinary Python runs the same methods in the
 reference loop, which is what a test of the rule calls.
@@ -103,6 +110,27 @@ class Trace:
     name: str = ""
 
 
+@dataclass(frozen=True)
+class Claim:
+    """What pairings do to the factor of one input: its change lies from `low` to `high`.
+
+    Each of `times` pairings, `rate` of them a second, has `pre` presynaptic spikes and `post` of
+    the cell, `apart` ms from each other; `lag` ms lie between the first of each (positive: pre
+    first). `chosen` is a published set, by default none.
+    """
+
+    words: str
+    low: float
+    high: float
+    lag: float = 10.0
+    rate: float = 1.0
+    times: int = 60
+    pre: int = 1
+    post: int = 1
+    apart: float = 10.0
+    chosen: str = ""
+
+
 def weight(start: float | str, *, low: float | str, high: float | str) -> Any:
     """Declare a weight; see the manual at the top of this module, item 3."""
     return Weight(start, low, high)
@@ -144,8 +172,18 @@ class Rule(Parametrised):
     pre_is: ClassVar[Literal["spike", "arrival"]] = "arrival"
     #: why the rule is only illustrative on spiking cells; empty when it is not
     illustrative: ClassVar[str] = ""
+    #: why the rule moves without a spike; empty when it does not
+    in_silence: ClassVar[str] = ""
     #: the parameters that set the size of a change; a population spreads them together
     amplitudes: ClassVar[Sequence[str]] = ()
+    #: what the rule is for
+    claims: ClassVar[Sequence[Claim]] = ()
+    #: optional laws that the rule keeps
+    promises: ClassVar[Sequence[str]] = ()
+    #: laws that do not hold for the rule, each with the reason; one that does hold is a fault
+    exempt: ClassVar[Mapping[str, str]] = {}
+    #: parameters of unit "1" that carry a power of a rate
+    rate_powers: ClassVar[Mapping[str, int]] = {}
 
     def __init_subclass__(cls, **kwargs: Any) -> None:
         kinds: dict[type, dict[str, Any]] = {Weight: {}, State: {}, Trace: {}}

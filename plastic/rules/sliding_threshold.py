@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 
 from plastic.parameters import parameter
-from plastic.rules._interface import Changes, Rule, state, weight
+from plastic.rules._interface import Changes, Claim, Rule, state, weight
 
 OURS = "ours: no published spiking constants exist"
 
@@ -60,6 +60,19 @@ class SlidingThreshold(Rule):
         "a declared window"
     )
     amplitudes = ("eta",)
+    claims = (
+        Claim("pairings at 1 Hz hardly depress", -0.02, -0.001),
+        Claim("pairings at 20 Hz, two a window, potentiate", 0.25, 0.35, rate=20),
+        Claim(
+            "one spike of the input with three of the cell, 60 times, doubles",
+            0.85,
+            1.05,
+            rate=0.1,
+            post=3,
+        ),
+    )
+    promises = ("both_sides",)
+    rate_powers = {"eta": -3}
 
     w = weight(1.0, low="w_min", high="w_max")
     theta = state("theta_rest", scope="cell")

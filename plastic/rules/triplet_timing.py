@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from plastic.parameters import parameter
-from plastic.rules._interface import Changes, Rule, trace, weight
+from plastic.rules._interface import Changes, Claim, Rule, trace, weight
 
 PG = "Pfister & Gerstner 2006, J Neurosci 26:9673, from memory, corroborated by the published error"
 
@@ -63,6 +63,14 @@ class TripletTiming(Rule):
     references = ("Pfister JP, Gerstner W (2006) J Neurosci 26:9673",)
     dose = 60
     amplitudes = ("a2_plus", "a3_plus", "a2_minus", "a3_minus")
+    claims = (
+        Claim("slow pairings, presynaptic first, do nothing", -0.01, 0.01),
+        Claim("slow pairings the other way round depress by a third", -0.35, -0.28, lag=-10),
+        Claim("at 20 Hz, presynaptic first, they potentiate by a quarter", 0.2, 0.26, rate=20),
+        Claim("at 50 Hz they potentiate by three quarters", 0.7, 0.8, rate=50),
+        Claim("at 50 Hz they do so in either order", 0.7, 0.8, lag=-10, rate=50),
+    )
+    promises = ("both_sides",)
 
     w = weight(1.0, low=0.0, high="w_max")
     r1 = trace("pre", tau="tau_plus")

@@ -118,6 +118,15 @@ def test_a_held_current_leaves_its_integral(tree: Tree, dt: float) -> None:
     assert not spread[:, n:].any()
 
 
+def jumped(powers: Floats, number: int, v: Floats) -> Floats:
+    """Return the voltages a number of quiet steps later."""
+    size = len(v)
+    m = steps.new_membrane(size, 0, 0, len(powers))
+    m.powers[:], m.v[:size] = powers, v
+    here = int(steps.jump(m, number, np.uintp(0), np.uintp(size)))
+    return np.asarray(m.v[here : here + size])
+
+
 @every_tree
 @pytest.mark.parametrize("number", [0, 1, 7, 64, 1000, 123_457])
 def test_a_jump_is_the_power_of_a_step(tree: Tree, number: int) -> None:
@@ -125,30 +134,24 @@ def test_a_jump_is_the_power_of_a_step(tree: Tree, number: int) -> None:
     v = np.zeros(len(powers[0]))
     v[:n] = np.random.default_rng(1).normal(5, 3, n)
     expected = expm(generator(tree) * DT * number) @ v[:n]
-    steps.jump(powers, number, v, np.zeros_like(v))
-    np.testing.assert_allclose(v[:n], expected, rtol=1e-10, atol=1e-13)
+    np.testing.assert_allclose(jumped(powers, number, v)[:n], expected, rtol=1e-10, atol=1e-13)
 
 
 def test_a_jump_beyond_all_doublings_ends_at_rest() -> None:
     powers = powers_of(TREES["two nodes"])
     v = np.full(len(powers[0]), 50.0)
-    steps.jump(powers, 2**steps.DOUBLINGS, v, np.zeros_like(v))
-    assert not v.any()
+    assert not jumped(powers, 2**steps.DOUBLINGS, v).any()
 
 
 @quick
 @given(cuts=st.lists(st.integers(0, 5000), max_size=5))
 def test_a_quiet_gap_may_be_cut_anywhere(cuts: list[int]) -> None:
-    powers = POWERS
-    whole = np.arange(1.0, 9.0)
-    parts, out = whole.copy(), np.zeros(8)
+    powers = PROPAGATED[0]
+    parts = np.arange(1.0, 9.0)
     for a, b in itertools.pairwise([0, *sorted(cuts), 5000]):
-        steps.jump(powers, b - a, parts, out)
-    steps.jump(powers, 5000, whole, out)
+        parts = jumped(powers, b - a, parts)
+    whole = jumped(powers, 5000, np.arange(1.0, 9.0))
     np.testing.assert_allclose(parts, whole, rtol=1e-9, atol=1e-13)
-
-
-POWERS = powers_of(TREES["six nodes"])
 
 
 def test_nodes_are_padded_to_four() -> None:
@@ -156,7 +159,7 @@ def test_nodes_are_padded_to_four() -> None:
 
 
 def test_the_highest_node_is_found() -> None:
-    assert steps.highest_of(np.array([-3.0, -1.0, -2.0])) == -1.0
+    assert steps.highest_of(np.array([9.0, 9.0, -3.0, -1.0, -2.0]), np.uintp(2), 3) == -1.0
 
 
 # ---- synapses
@@ -200,13 +203,19 @@ def test_what_is_open_is_the_mean_over_the_step() -> None:
     np.testing.assert_allclose(drive, [pulled[0], pulled[1] + pulled[2]], rtol=1e-11)
 
 
-def injected(spread: Floats, total: Floats, drive: Floats, v: Floats, out: Floats) -> Floats:
-    """Return `out` with the currents of one slot per node added."""
-    n, found = len(total), out.copy()
+def stepped(turned: Floats, spread: Floats, total: Floats, drive: Floats, v: Floats) -> Floats:
+    """Return the voltages after a step with one slot per node of `total`."""
+    n, size = len(total), len(v)
     slots = table(layout.SLOT, node=np.arange(n), first=0, last=0)
-    which, room = np.zeros(n, np.int64), np.zeros((n, n))
-    steps.inject(slots, spread, total, drive, v, found, which, room, np.zeros(n))
-    return found
+    both, which = np.concatenate([v, np.full(size, np.nan)]), np.zeros(n, np.int64)
+    matrix, current = np.zeros((n, n)), np.zeros(n)
+    here, there = np.uintp(0), np.uintp(size)
+    count = steps.hold_currents(
+        turned, slots, spread, total, drive, both, here, which, matrix, current
+    )
+    steps.advance(turned, spread, which, current, count, both, here, there)
+    assert both[:size].tolist() == v.tolist()
+    return both[size:]
 
 
 @quick
@@ -217,26 +226,30 @@ def injected(spread: Floats, total: Floats, drive: Floats, v: Floats, out: Float
 def test_the_currents_of_open_slots_solve_their_equations(
     open_here: list[float], seed: int
 ) -> None:
-    """I = drive - g (theta end + (1 - theta) start), end = out + sum of spread I: numpy's."""
-    spread = propagated(TREES["six nodes"])[1]
+    """I = drive - g (theta end + (1 - theta) start), end = quiet + sum of spread I: numpy's."""
+    powers, spread = PROPAGATED
     draw, total = np.random.default_rng(seed), np.array(open_here)
-    v, out = (np.append(draw.normal(5, 10, 6), [0.0, 0.0]) for _ in range(2))
-    drive = total * draw.normal(30, 40, 6)
+    v = np.append(draw.normal(5, 10, 6), [0.0, 0.0])
+    quiet, drive = powers[0].T @ v, total * draw.normal(30, 40, 6)
     x = total * spread.diagonal()
     theta, own = (1 + x) / (2 + x), spread[:, :6].T
-    wanted = drive - total * (theta * out[:6] + (1 - theta) * v[:6])
+    wanted = drive - total * (theta * quiet[:6] + (1 - theta) * v[:6])
     current = np.linalg.solve(np.eye(6) + (total * theta)[:, None] * own, wanted)
-    expected = out[:6] + own @ current
-    found = injected(spread, total, drive, v, out)
-    np.testing.assert_allclose(found[:6], expected, rtol=1e-9, atol=1e-9)
+    found = stepped(powers[0], spread, total, drive, v)
+    np.testing.assert_allclose(found[:6], quiet[:6] + own @ current, rtol=1e-9, atol=1e-9)
     assert not found[6:].any()
 
 
+PROPAGATED = propagated(TREES["six nodes"])
+
+
 @pytest.mark.parametrize("g", [1e-3, 1.0, 30.0, 1e3, 1e7])
-def test_an_open_node_goes_to_its_reversal_without_ringing(g: float) -> None:
+@pytest.mark.parametrize("size", [1, 4])
+def test_an_open_node_goes_to_its_reversal_without_ringing(size: int, g: float) -> None:
     """A node without a leak: what is left is 1 / (1 + x + x^2 / 2), x = g dt / C; never below 0."""
-    z, start = np.array([[0.02, 0.0, 0.0, 0.0]]), np.array([3.0, 0.0, 0.0, 0.0])
-    found = injected(z, np.array([g]), np.array([70.0 * g]), start, start)[0]
+    spread, v = np.zeros((1, size)), np.zeros(size)
+    spread[0, 0], v[0] = 0.02, 3.0
+    found = stepped(np.eye(size), spread, np.array([g]), np.array([70.0 * g]), v)[0]
     x = 0.02 * g
     left = (70.0 - found) / (70.0 - 3.0)
     assert left == pytest.approx(1 / (1 + x + x * x / 2), rel=1e-6, abs=1e-12)

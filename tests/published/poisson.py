@@ -37,8 +37,12 @@ def changes(
     draw = np.random.default_rng(seed)
     marks = 1000 * (burn_in + seconds * np.arange(runs + 1))
     trains = [train(rate, float(marks[-1]), draw) for rate in (pre, post)]
-    found = impose(scaled(rule), *trains, readings=marks)
-    return np.diff(found.w.values[0]) / SMALL
+    return between(rule, *trains, marks)
+
+
+def between(rule: Rule, pre: Array, post: Array, marks: Array) -> Array:
+    """Return the change of the weight from each of `marks` (ms) to the next, on given trains."""
+    return np.diff(impose(scaled(rule), pre, post, readings=marks).w.values[0]) / SMALL
 
 
 def mean_and_error(values: Array) -> tuple[float, float]:

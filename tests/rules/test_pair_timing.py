@@ -1,15 +1,21 @@
-"""The pair rule: one pair, coincidence, bounds, several inputs."""
+"""The pair rule: one pair, coincidence, bounds, several inputs, weight dependence."""
 
 from __future__ import annotations
 
 import math
 
+import numpy as np
 import pytest
 
-from plastic import impose
+from plastic import Rule, impose
+from plastic.rules.nearest_pair_timing import NearestPairTiming
 from plastic.rules.pair_timing import PairTiming
+from plastic.rules.pre_centred_pair_timing import PreCentredPairTiming
+from plastic.rules.reduced_pair_timing import ReducedPairTiming
 
 RULE = PairTiming(a_plus=0.1, a_minus=0.05, tau_plus=20, tau_minus=40)
+PAIR_RULES = [PairTiming, NearestPairTiming, PreCentredPairTiming, ReducedPairTiming]
+every_pairing = pytest.mark.parametrize("family", PAIR_RULES, ids=lambda rule: rule.__name__)
 
 
 def change(pre: list[float], post: list[float], rule: PairTiming = RULE) -> float:
@@ -17,11 +23,11 @@ def change(pre: list[float], post: list[float], rule: PairTiming = RULE) -> floa
 
 
 def test_a_presynaptic_spike_depresses_by_what_is_left_of_postsynaptic_ones() -> None:
-    assert RULE.on_pre(o1=0.5) == {"w": -0.025}
+    assert RULE.on_pre(o1=0.5, w=1.0) == {"w": -0.025}
 
 
 def test_a_postsynaptic_spike_potentiates_by_what_is_left_of_presynaptic_ones() -> None:
-    assert RULE.on_post(r1=0.5) == {"w": 0.05}
+    assert RULE.on_post(r1=0.5, w=1.0) == {"w": 0.05}
 
 
 def test_pre_before_post_potentiates_and_post_before_pre_depresses() -> None:
@@ -82,3 +88,48 @@ def test_the_near_balanced_set_depresses_five_per_cent_more() -> None:
     rule = PairTiming.from_set("near_balanced")
     assert rule.a_minus / rule.a_plus == pytest.approx(1.05, rel=1e-12)
     assert (rule.a_plus, rule.tau_plus, rule.tau_minus) == (0.005, 20, 20)
+
+
+def test_the_multiplicative_set_starts_in_the_middle_of_its_range() -> None:
+    """Gutig et al. 2003, from memory: alpha = 1.05, 20 ms (high), lambda = 0.005 (mid)."""
+    rule = PairTiming.from_set("multiplicative")
+    assert (rule.w_max, rule.mu, rule.tau_plus, rule.tau_minus) == (2, 1, 20, 20)
+    assert rule.a_plus / rule.w_max == pytest.approx(0.005, rel=1e-12)
+    assert rule.a_minus / rule.a_plus == pytest.approx(1.05, rel=1e-12)
+
+
+def test_without_an_exponent_a_change_does_not_know_its_weight() -> None:
+    ends = [(RULE.on_pre(o1=0.5, w=w), RULE.on_post(r1=0.5, w=w)) for w in (0.0, 1.0, 10.0)]
+    assert ends == [({"w": -0.025}, {"w": 0.05})] * 3
+
+
+@every_pairing
+@pytest.mark.parametrize("mu", [0.0, 0.02, 0.5, 1.0])
+def test_a_pair_moves_the_weight_by_a_power_of_its_distance_from_the_bound(
+    family: type[Rule], mu: float
+) -> None:
+    """Gutig et al. 2003 (from memory, high), in units of w_max: up (1 - w)^mu, down w^mu.
+
+    Pairs 1 s apart, up, up, down: the recursion by hand; every pairing sees the same pairs.
+    """
+    rule = family(a_plus=0.3, a_minus=0.2, tau_plus=20, tau_minus=40, w_max=1.6, mu=mu)
+    w = 1.0
+    for _ in range(2):
+        w += 0.3 * (1 - w / 1.6) ** mu * math.exp(-5 / 20)
+    w -= 0.2 * (w / 1.6) ** mu * math.exp(-8 / 40)
+    found = impose(rule, [0.0, 1000.0, 2008.0], [5.0, 1005.0, 2000.0], compiled=False)
+    assert float(found.w[0, -1]) == pytest.approx(w, rel=1e-9)
+
+
+@every_pairing
+def test_a_multiplicative_weight_approaches_its_bounds_without_reaching_them(
+    family: type[Rule],
+) -> None:
+    """The control, additive, is at the bound after the same pairs."""
+    at = 1000.0 * np.arange(200)
+    soft, hard = (
+        float(impose(family(a_plus=0.1, w_max=2, mu=mu), at, at + 5, compiled=False).w[0, -1])
+        for mu in (1.0, 0.0)
+    )
+    assert 1.99 < soft < 2.0
+    assert hard == 2.0
