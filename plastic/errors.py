@@ -9,7 +9,8 @@
     └── StoreError       an output folder or results file that must not be touched
 
 Each keeps its numbers as attributes, so that a program can act on them. The command line prints
-the message alone and leaves with status 2; no traceback reaches a user.
+the message alone and leaves with status 2; no traceback reaches a user. What is possible but
+unusual is no error: it is the one warning, `UnusualValue`.
 """
 
 from __future__ import annotations
@@ -78,3 +79,7 @@ class RuleError(PlasticError):
 
 class StoreError(PlasticError):
     """An output folder or a results file that must not be touched, or cannot be read."""
+
+
+class UnusualValue(UserWarning):
+    """A value that is possible and outside common practice; the command line prints one line."""

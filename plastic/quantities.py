@@ -34,12 +34,16 @@ _QUANTITY = re.compile(
     r"\s*[-+]?(\d+\.?\d*|\.\d+|inf|nan)([eE][-+]?\d+)?(\s*[^\d\s.,;+-][^,;]*)?\s*"
 )
 
+#: a key that TOML reads without quotation marks, and what pydantic calls a key itself
+_BARE = re.compile(r"[\w-]+|\[key\]")
+
 
 def key_text(path: Iterable[Key]) -> str:
     """Return the path of a key as people write it: ``input.far.driven_by[0].delay``."""
     text = ""
     for key in path:
-        text += f"[{key}]" if isinstance(key, int) else f".{key}"
+        quoted = isinstance(key, str) and not _BARE.fullmatch(key)
+        text += f"[{key}]" if isinstance(key, int) else f'."{key}"' if quoted else f".{key}"
     return text.removeprefix(".")
 
 
@@ -73,7 +77,8 @@ def unknown(
 class Quantity:
     """A number with a unit, as text; a float in the internal unit of `dimension` inside.
 
-    ``low`` and ``high`` are inclusive bounds, ``above`` and ``below`` exclusive ones.
+    ``low`` and ``high`` are inclusive bounds, ``above`` and ``below`` exclusive ones; ``usual`` is
+    the range of common practice, outside which a value is possible and told.
     """
 
     dimension: str
@@ -81,6 +86,7 @@ class Quantity:
     high: float = math.inf
     above: float = -math.inf
     below: float = math.inf
+    usual: tuple[float, float] | None = None
 
     @property
     def hint(self) -> str:
@@ -91,15 +97,28 @@ class Quantity:
     @property
     def allowed(self) -> str:
         """The allowed range, in words."""
-        unit = f" {INTERNAL[self.dimension]}".rstrip().replace("**", "^").replace("*", " ")
         parts = [
             (self.low, "at least"),
             (self.above, "above"),
             (self.high, "at most"),
             (self.below, "below"),
         ]
-        words = [f"{word} {bound:g}{unit}" for bound, word in parts if math.isfinite(bound)]
-        return "must be " + " and ".join(words)
+        words = [f"{word} {self.shown(bound)}" for bound, word in parts if math.isfinite(bound)]
+        usual = f"; {self.practice}" if self.usual else ""
+        return "must be " + " and ".join(words) + usual
+
+    @property
+    def practice(self) -> str:
+        """The usual range, in words; empty where there is none."""
+        if self.usual is None:
+            return ""
+        low, high = self.usual
+        return f"{low:g} to {self.shown(high)} is usual (common practice)"
+
+    def shown(self, value: float) -> str:
+        """Return a value with the internal unit, as people write it."""
+        unit = INTERNAL[self.dimension].replace("**", "^").replace("*", " ")
+        return f"{value:g} {unit}".rstrip()
 
     def read(self, text: Any) -> float:
         """Return the float in the internal unit, or raise a refusal."""

@@ -65,6 +65,22 @@ def test_bounds_are_inclusive_or_exclusive_as_declared() -> None:
             open_.read(edge)
 
 
+def test_a_refusal_says_what_is_usual_and_a_usual_range_refuses_nothing() -> None:
+    width = Quantity("length", above=0, high=100, usual=(0.2, 10))
+    assert width.read("50 um") == pytest.approx(50)
+    with pytest.raises(PydanticCustomError) as caught:
+        width.read("-50 um")
+    assert caught.value.message() == (
+        "must be above 0 um and at most 100 um; 0.2 to 10 um is usual (common practice)"
+    )
+    assert TIME.practice == ""
+
+
+def test_a_value_is_shown_with_its_unit_as_people_write_it() -> None:
+    assert Quantity("membrane resistance").shown(15_000.0) == "15000 ohm cm^2"
+    assert Quantity("number").shown(0.5) == "0.5"
+
+
 @pytest.mark.parametrize("value", [0, 6, 2.0, True, "2"])
 def test_a_count_is_a_whole_number_in_its_range(value: object) -> None:
     assert Count(1, 5).read(2) == 2

@@ -25,6 +25,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--seed", type=_at_least_0, metavar="N", help="seed of all random numbers")
     parser.add_argument("--workers", type=_at_least_1, metavar="N", help="threads (default: all)")
     parser.add_argument("--no-figures", action="store_true", help="write no figures")
+    parser.add_argument(
+        "--check-dt", action="store_true", help="run a few cells again at half the time step"
+    )
 
 
 def default_out(study: Path) -> Path:
@@ -55,10 +58,20 @@ def run(args: argparse.Namespace) -> int:
             from plastic.report.figures import write_figures
 
             write_figures(dataset, out / "figures", progress=bar.task("drawing"))
+        checked = _checked(study, args, bar) if args.check_dt else []
     print(f"{comparison.head}\n")
-    printed([*_protocols(study), *comparison.grids(verdicts=False)])
+    printed([*_protocols(study), *comparison.grids(verdicts=False), *checked])
     _tell(out, figures=not args.no_figures, notes=comparison.notes)
     return 0
+
+
+def _checked(study: Any, args: argparse.Namespace, bar: _bar) -> list[Any]:
+    """Return the table of what half the time step changes."""
+    import plastic
+    from plastic.report.half_step import step_grid
+
+    task = bar.task("at half the time step")
+    return [step_grid(plastic.check_dt(study, workers=args.workers, progress=task))]
 
 
 def _protocols(study: Any) -> list[Any]:

@@ -37,7 +37,8 @@ def impose(
     post : array, ms
         Spike times of the cell.
     end : float, ms, optional
-        The run ends here; by default just after the last spike (and the rule's last window).
+        The run ends here; by default just after the last spike (and the rule's last window), or
+        at 0 when nothing spikes.
     readings : array, ms, optional
         Times at which to read; by default 0 and ``end``. A reading sees the state just before the
         spikes of its own instant.
@@ -52,7 +53,8 @@ def impose(
     Raises
     ------
     Misfit
-        Times that are negative, unsorted, not finite, or twice the same for one input.
+        Times that are negative, unsorted, not finite, or twice the same for one input; a rule
+        that is a class or a name instead of an instance.
     RuleError
         A rule that returned something that is no number.
 
@@ -63,6 +65,7 @@ def impose(
     >>> float(impose(rule, pre=[0.0], post=[10.0]).factor[0, -1].round(6))
     1.007141
     """
+    _is_instance(rule)
     trains = (
         {str(k): _times(f"pre[{k!r}]", v) for k, v in pre.items()}
         if isinstance(pre, Mapping)
@@ -71,12 +74,24 @@ def impose(
     after = _times("post", post)
     last = max([0.0, *(t[-1] for t in [*trains.values(), after] if len(t))])
     window = float(getattr(rule, "window", 0.0)) if rule.reads == "rates" else 0.0
-    finish = math.nextafter(last + window, math.inf) if end is None else _times("end", end)[0]
+    silent = not any(map(len, [*trains.values(), after]))
+    by_itself = window if silent else math.nextafter(last + window, math.inf)
+    finish = by_itself if end is None else _times("end", end)[0]
     at = np.array([0.0, finish]) if readings is None else _times("readings", readings)
     time, who = _merged(list(trains.values()), after, finish)
     run = _compiled if compiled else _plain
     variables, factors, states = run(rule, len(trains), time, who, at)
     return _labelled(rule, list(trains), at, variables, factors, states)
+
+
+def _is_instance(rule: object) -> None:
+    if isinstance(rule, Rule):
+        return
+    if isinstance(rule, type) and issubclass(rule, Rule):
+        got, instance = f"the class {rule.__name__}", f"{rule.__name__}()"
+    else:
+        got, instance = repr(rule), "plastic.rules.find(name)()"
+    raise Misfit("rule", got=got, expected=f"an instance, such as {instance}")
 
 
 def _times(name: str, values: ArrayLike) -> NDArray[np.float64]:

@@ -54,7 +54,7 @@ class Membrane:
             stretch_dendrite=[],
         )
         self.v = np.zeros(nodes)
-        self.slow, self.fast = [0.0] * len(self.groups), [0.0] * len(self.groups)
+        self.slow, self.fast, self.ends = ([0.0] * len(self.groups) for _ in range(3))
         self.widen(np.ones(len(stretches)))
 
     def widen(self, multiple: Floats) -> None:
@@ -70,6 +70,7 @@ class Membrane:
         """Open a conductance with a peak of `amount` nS."""
         norm, _, keep_rise, _ = self.groups[group]
         self.slow[group] += amount * norm
+        self.ends[group] = max(self.ends[group], CUT * self.slow[group])
         if keep_rise > 0:
             self.fast[group] += amount * norm
 
@@ -82,8 +83,8 @@ class Membrane:
             drive[self.node[g]] += one * reversal
             self.slow[g] *= keep_decay
             self.fast[g] *= keep_rise
-            if self.slow[g] < CUT:
-                self.slow[g] = self.fast[g] = 0.0
+            if self.slow[g] < self.ends[g]:
+                self.slow[g] = self.fast[g] = self.ends[g] = 0.0
         before, self.v = self.v, self.propagator @ self.v
         self.v = self.v + self.integral @ self._currents(total, drive, before)
 

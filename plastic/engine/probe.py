@@ -49,7 +49,7 @@ def run_probe(
     past its last peak: an excitatory conductance can lift it once more when inhibition is over, so
     each is given three of its time constants. What is left of the trace stays at the last value.
     """
-    v, slow, fast, single, here = m.v, m.slow, m.fast, m.powers[0], U0
+    v, slow, fast, ends, single, here = m.v, m.slow, m.fast, m.ends, m.powers[0], U0
     there = np.uintp(m.leak.shape[0])
     total, drive, which, matrix, current, spread = (
         m.total,
@@ -64,6 +64,7 @@ def run_probe(
     for g in range(slow.shape[0]):
         slow[g] = 0.0
         fast[g] = 0.0
+        ends[g] = 0.0
     o, top, fired, lifted = 0, 0.0, -1, open_step[open_step.shape[0] - 1] + 50.0
     for k in range(open_step.shape[0]):
         if groups[open_group[k]].reversal > 0.0 and amount[k] > 0.0:
@@ -83,6 +84,7 @@ def run_probe(
             g = open_group[o]
             scaled = amount[o] * groups[g].norm
             slow[g] += scaled
+            ends[g] = max(ends[g], CUT * slow[g])
             if groups[g].keep_rise > 0.0:
                 fast[g] += scaled
             o += 1
@@ -90,7 +92,7 @@ def run_probe(
         n_open = hold_currents(single, slots, spread, total, drive, v, here, which, matrix, current)
         advance(single, spread, which, current, n_open, v, here, there)
         here, there = there, here
-        _open = fade(groups, slow, fast)
+        _open = fade(groups, slow, fast, ends)
         step += 1
     for rest in range(step, trace.shape[0]):
         trace[rest] = v[here]

@@ -19,7 +19,7 @@ R30, R27, R31, R11 = np.uint64(30), np.uint64(27), np.uint64(31), np.uint64(11)
 ONE, PARTS = np.uint64(1), np.uint64(4096)
 FRACTION, NORMAL_A, NORMAL_B, REFILL = 2045, 2046, 2047, 2048
 DOUBLINGS = 26  # powers of two of one step that a jump may use
-CUT = 1e-4  # nS: a conductance below it is over; it moves a soma by a microvolt at most
+CUT = 1e-4  # a conductance that has fallen to this share of its largest is over
 
 #: unsigned: a signed index is tested for being negative at every access
 U0, U1, U2, U3, U4 = (np.uintp(k) for k in range(5))
@@ -212,6 +212,7 @@ class Membrane(NamedTuple):
     v: Any  # (2 size,) before and after a step, in turn
     slow: Any  # (group,) nS
     fast: Any  # (group,) nS
+    ends: Any  # (group,) nS, at which it is over
     total: Any  # (slot,) nS
     drive: Any  # (slot,) pA
     current: Any  # (slot,) pA
@@ -230,6 +231,7 @@ def new_membrane(nodes, groups, slots, doublings):
         np.zeros((slots, size)),
         np.zeros((4, size, size)),
         np.zeros(2 * size),
+        np.zeros(groups),
         np.zeros(groups),
         np.zeros(groups),
         np.zeros(slots),
@@ -373,16 +375,20 @@ def eliminate(matrix, values, n):
 
 
 @compiled
-def fade(groups, slow, fast):
-    """Let conductances decay over one step; return whether any is still open."""
+def fade(groups, slow, fast, ends):
+    """Let conductances decay over one step; return whether any is still open.
+
+    One that has fallen to `ends` (nS) is over.
+    """
     remaining = False
     for g in range(groups.shape[0]):
         if slow[g] > 0.0:
             slow[g] *= groups[g].keep_decay
             fast[g] *= groups[g].keep_rise
-            if slow[g] < CUT:
+            if slow[g] < ends[g]:
                 slow[g] = 0.0
                 fast[g] = 0.0
+                ends[g] = 0.0
             else:
                 remaining = True
     return remaining

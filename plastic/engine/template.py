@@ -398,7 +398,8 @@ def run_cell(w, cells, log, c, stop):
 
     # membrane
     m = new_membrane(plan.n_nodes, groups.shape[0], slots.shape[0], DOUBLINGS)
-    v, slow, fast, spread, size = m.v, m.slow, m.fast, m.spread, m.leak.shape[0]
+    v, slow, fast, ends, spread = m.v, m.slow, m.fast, m.ends, m.spread
+    size = m.leak.shape[0]
     total, drive, which, matrix, current = m.total, m.drive, m.which, m.matrix, m.current
     here, there = U0, np.uintp(size)
     multiple = np.ones(stretches.shape[0])
@@ -571,6 +572,7 @@ def run_cell(w, cells, log, c, stop):
                     g = contacts[k].group
                     scaled = amount * groups[g].norm
                     slow[g] += scaled
+                    ends[g] = max(ends[g], CUT * slow[g])
                     if groups[g].keep_rise > 0.0:
                         fast[g] += scaled  # a dual exponential starts at zero
                     some_open = some_open or amount > 0.0
@@ -654,7 +656,7 @@ def run_cell(w, cells, log, c, stop):
                 )
                 advance(single, spread, which, current, n_open, v, here, there)
                 here, there = there, here
-            some_open = fade(groups, slow, fast)
+            some_open = fade(groups, slow, fast, ends)
         else:
             advance(single, spread, which, current, 0, v, here, there)
             here, there = there, here

@@ -155,7 +155,7 @@ def _late(one: xr.Dataset) -> float:
     """Return the share of cells that reach the criterion only in the follow-up."""
     minutes = np.asarray(one["minutes_to_criterion"].values, dtype=float)
     end = float(one["epoch_end"].sel(epoch="induction").values)
-    return float(np.mean(np.nan_to_num(minutes, nan=-np.inf) > end + 1e-6))
+    return float(np.mean(np.isfinite(minutes) & (minutes > end + 1e-6)))
 
 
 def limit_of(dataset: xr.Dataset, protocol: str) -> int:

@@ -60,7 +60,7 @@ def quantile(values: ArrayLike, share: float) -> float:
 
 
 def counts_of(repeats: ArrayLike, limit: int) -> Counts:
-    """Return the counts of an arm; a cell that did not get there (NaN) is beyond the protocol.
+    """Return the counts of an arm; a cell that did not get there is beyond the protocol.
 
     Parameters
     ----------

@@ -18,6 +18,7 @@ from plastic.measures import find as find_measure
 from plastic.measures import names as measure_names
 from plastic.protocols import Schedule
 from plastic.routes import Mixture
+from plastic.study.firing import first_lags, spikes_of_repeats
 from plastic.study.grid import Arm, reading_times
 from plastic.study.model import Study
 from plastic.study.population import Population, bare_reader, ceilings
@@ -25,9 +26,6 @@ from plastic.study.verdicts import NEVER, judge, reach
 
 Floats = NDArray[np.float64]
 Arrays = dict[str, NDArray[np.generic]]
-
-#: ms after the last event of a repeat within which a spike still belongs to it
-AFTERMATH = 50.0
 
 
 class Stopped(Exception):  # noqa: N818 - a message, not a mistake
@@ -142,8 +140,13 @@ def run_block(bench: Bench, arm: Arm, stop: NDArray[np.int64]) -> Arrays:
     dict of str to array
         Names as in the results; the first axis is the cell.
     """
-    study, population, chosen = bench.study, bench.population, bench.chosen
-    wiring, cells, log = simulate(study, population, arm, chosen, stop)
+    simulated = simulate(bench.study, bench.population, arm, bench.chosen, stop)
+    return read_block(bench, arm, *simulated)
+
+
+def read_block(bench: Bench, arm: Arm, wiring: Wiring, cells: Cells, log: Log) -> Arrays:
+    """Return what the results hold of one arm in one slice of cells that was simulated."""
+    study, population = bench.study, bench.population
     reader, route, schedule = bench.reader(), arm.route, arm.schedule
     names, inhibition = read_inputs(study), not schedule.inhibition_blocked
     times, repeats, baseline = reading_times(schedule)
@@ -166,7 +169,7 @@ def run_block(bench: Bench, arm: Arm, stop: NDArray[np.int64]) -> Arrays:
         "diameter": _diameters(population.scene, log),
     }
     found |= _measured(bench, names, shapes, fires, state, baseline)
-    found |= _judged(bench, arm, log, fires, induced, names, schedule, times, repeats, baseline)
+    found |= _judged(bench, arm, log, fires, induced, names, schedule, times, repeats)
     return found
 
 
@@ -218,40 +221,6 @@ def _measured(
     return {name: find_measure(name).value(readout) for name in measure_names()}
 
 
-def spikes_of_repeats(schedule: Schedule, log: Log, dt: float) -> tuple[Floats, Floats]:
-    """Return the share of repeats with a spike of the cell, and its spikes during induction."""
-    if not len(schedule.repeat_starts) or not schedule.pattern:
-        return np.zeros(len(log.ended)), np.zeros(len(log.ended))
-    span = max((float(t[-1]) for t in schedule.pattern.values() if len(t)), default=0.0)
-    starts = schedule.repeat_starts
-    fired, count = np.zeros(len(log.ended)), np.zeros(len(log.ended))
-    for c, ended in enumerate(log.ended):
-        at = log.spike_step[c, : min(int(ended["spikes"]), log.spike_step.shape[1])] * dt
-        low = np.searchsorted(at, starts)
-        high = np.searchsorted(at, starts + span + AFTERMATH)
-        fired[c] = (high > low).mean()
-        count[c] = ((at >= starts[0]) & (at < schedule.repeat_ends[-1])).sum()
-    return fired, count
-
-
-def _first_lags(schedule: Schedule, log: Log, name: str, dt: float) -> Floats:
-    """Return the mean realised lag (ms) from the input's first event to the spike, per cell."""
-    own = schedule.pattern.get(name, np.zeros(0))
-    lags = np.full(len(log.ended), np.nan)
-    if not len(own) or not len(schedule.repeat_starts):
-        return lags
-    events = schedule.repeat_starts + own[0]
-    for c, ended in enumerate(log.ended):
-        at = log.spike_step[c, : min(int(ended["spikes"]), log.spike_step.shape[1])] * dt
-        if not len(at):
-            continue
-        near = np.clip(np.searchsorted(at, events - AFTERMATH), 0, len(at) - 1)
-        gap = at[near] - events
-        gap = gap[np.abs(gap) <= 2 * AFTERMATH]
-        lags[c] = gap.mean() if len(gap) else np.nan
-    return lags
-
-
 def _judged(
     bench: Bench,
     arm: Arm,
@@ -262,7 +231,6 @@ def _judged(
     schedule: Schedule,
     times: Floats,
     repeats: NDArray[np.int64],
-    baseline: int,
 ) -> Arrays:
     study, goal = bench.study, bench.study.compare.criterion.alone_fires
     name = study.compare.criterion.input
@@ -275,7 +243,6 @@ def _judged(
         kind: judge(
             chances[:, who],
             goal,
-            baseline=baseline,
             repeats=repeats,
             minutes=minutes,
             factor=log.factor[:, :, learner],
@@ -287,7 +254,7 @@ def _judged(
     }
     plain, late = judged["_induced"], judged[""]
     dose = arm.rule.rule.dose
-    beyond = (plain.repeats > dose) if dose is not None else np.isfinite(plain.repeats)
+    beyond = np.isfinite(plain.repeats) & (plain.repeats > (0 if dose is None else dose))
     return {
         "repeats_to_criterion": late.repeats,
         "repeats_to_criterion_induced": plain.repeats,
@@ -298,6 +265,6 @@ def _judged(
         "extrapolated": beyond.astype(np.int8),
         "partner_fired": fired,
         "spikes": count,
-        "realised_lag": _first_lags(schedule, log, name, study.dt),
+        "realised_lag": first_lags(schedule, log, name, study.dt),
         "ceiling": ceilings(bench.population, arm.route, bench.chosen)[:, learner],
     }

@@ -10,7 +10,10 @@ from pydantic.dataclasses import dataclass
 from plastic.membrane import spikes, tree
 from plastic.quantities import Count, Part, Potential, Quantity, Text, Time, checked_keys, lone
 
-Length = Annotated[float, Quantity("length", above=0, high=1e5)]
+#: limits are those of any neuron; usual are pyramidal cells, from basal branches to apical trunks
+Length = Annotated[float, Quantity("length", above=0, high=1e4, usual=(10.0, 2000.0))]
+Diameter = Annotated[float, Quantity("length", above=0, high=100, usual=(0.2, 10.0))]
+LengthConstant = Annotated[float, Quantity("length", above=0, high=1e5)]
 Conductance = Annotated[float, Quantity("conductance", above=0, high=1e6)]
 Spread = Annotated[float, Quantity("number", low=0, high=3)]
 
@@ -22,7 +25,7 @@ class Dendrite(tree.Dendrite):
     """An unbranched dendrite with a sealed end; `length` and `diameter` in um."""
 
     length: Length
-    diameter: Length
+    diameter: Diameter
 
     @model_validator(mode="before")
     @classmethod
@@ -35,7 +38,7 @@ class BackPropagation(spikes.BackPropagation):
     """How spikes travel into a dendrite; um/ms, um, ms. Defaults are those of the membrane."""
 
     velocity: Annotated[float, Quantity("velocity", above=0)] = spikes.BackPropagation.velocity
-    length_constant: Length = spikes.BackPropagation.length_constant
+    length_constant: LengthConstant = spikes.BackPropagation.length_constant
     train_loss: Annotated[float, Quantity("number", low=0, below=1)] = (
         spikes.BackPropagation.train_loss
     )
@@ -49,11 +52,21 @@ class BackPropagation(spikes.BackPropagation):
 
 
 class Membrane(Part):
-    """Specific values: ohm cm^2, uF/cm^2, ohm cm."""
+    """Specific values: ohm cm^2, uF/cm^2, ohm cm.
 
-    resistance: Annotated[float, Quantity("membrane resistance", above=0)]
-    capacitance: Annotated[float, Quantity("membrane capacitance", above=0)]
-    axial: Annotated[float, Quantity("axial resistivity", above=0)]
+    Beyond the limits it is no cell: a membrane of 100 ohm cm^2 is that of an axon at the peak of
+    its spike, a bare bilayer has 0.5 to 1 uF/cm^2, sea water 20 ohm cm (from memory, fairly sure).
+    What is usual is common practice: 10 to 50 kohm cm^2 in pyramidal cells and more in small ones;
+    0.9 uF/cm^2 measured, up to twice as much for the membrane of spines; 70 to 300 ohm cm.
+    """
+
+    resistance: Annotated[
+        float, Quantity("membrane resistance", low=100, high=1e6, usual=(5e3, 1e5))
+    ]
+    capacitance: Annotated[
+        float, Quantity("membrane capacitance", low=0.1, high=10, usual=(0.7, 2.0))
+    ]
+    axial: Annotated[float, Quantity("axial resistivity", low=10, high=1000, usual=(70.0, 300.0))]
 
     @property
     def tau(self) -> float:

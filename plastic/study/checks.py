@@ -14,8 +14,16 @@ from plastic.quantities import key_text
 from plastic.study.inputs import Input, Location
 from plastic.study.model import Study
 
-#: steps per fastest time constant: at 5 the peak of an EPSP is off by less than 0.1 % (measured:
-#: 0.07 % at 0.1 ms for a rise of 0.5 ms), at 2.5 by 0.3 %
+#: steps per fastest time constant. Error of the peak at the soma, %, at 2.5, 5 and 10 steps per
+#: rise, against scipy (measured; rise 0.5 ms, decay 3 ms unless said):
+#:
+#:     40 nS on the soma of a point cell of 3 nS      -0.043   -0.011   -0.003
+#:     20 nS at 300 um of 400, 8 nS                   -0.012   -0.004   -0.001
+#:     5 nS at 200 um, rise 3 ms, decay 60 ms         -0.025   -0.007   -0.002
+#:     10 nS at 60 um, rise 0.3 ms, decay 1.5 ms      +0.006   +0.002   +0.000
+#:     30 nS at 60 um, 2 nS (the largest found)       -0.061   -0.017   -0.005
+#:
+#: A fifth is enough for 0.1 %; a whole time constant per step gives 0.25 %.
 STEPS = 5.0
 
 
@@ -46,6 +54,7 @@ def check_study(study: Study) -> None:
     _check_cell(judge)
     for name, it in study.inputs.items():
         _check_places(judge, name, it)
+        _check_reversal(judge, name, it)
         _check_release(judge, name, it)
         _check_drives(judge, name, it)
     _check_step(judge)
@@ -98,6 +107,16 @@ def _check_place(judge: _Judge, key: str, place: Location) -> None:
     if not 0 < place.at <= length:
         allowed = f"must be above 0 um and at most {length:g} um, the length of {place.on!r}"
         raise judge.refuse(f"{key}.at", f"{place.at:g} um", allowed)
+
+
+def _check_reversal(judge: _Judge, name: str, it: Input) -> None:
+    rest, reversal = judge.study.cell.rest, it.receptor.reversal_at(judge.study.cell.rest)
+    if it.kind == "excitatory" and reversal <= rest:
+        allowed = (
+            f"an excitatory input must reverse above rest, {rest:g} mV; "
+            "or leave kind out, and it is inhibitory"
+        )
+        raise judge.refuse(f"input.{name}.receptor", f"reversal {reversal:.4g} mV", allowed)
 
 
 def _check_release(judge: _Judge, name: str, it: Input) -> None:

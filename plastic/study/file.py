@@ -4,26 +4,29 @@ from __future__ import annotations
 
 import re
 import tomllib
+import warnings
 from collections.abc import Mapping, Sequence
 from pathlib import Path
 from typing import Any
 
 from pydantic import ValidationError
 
-from plastic.errors import PlasticError, StudyError, UnknownName
+from plastic.errors import PlasticError, StudyError, UnknownName, UnusualValue
 from plastic.quantities import Key, key_text
 from plastic.study.checks import check_study
 from plastic.study.model import Study
+from plastic.study.unusual import unusual
 
 #: bytes; a study is a page of text, not a data file
 LARGEST = 1_000_000
 
+_TABLE = "must be a table of keys"
 #: what pydantic's own complaints mean to a user, by the start of their type
 _MEANT = {
-    "model_type": "must be a table of keys",
-    "model_attributes_type": "must be a table of keys",
-    "dataclass_type": "must be a table of keys",
-    "dict_type": "must be a table of keys",
+    "model_type": _TABLE,
+    "model_attributes_type": _TABLE,
+    "dataclass_type": _TABLE,
+    "dict_type": _TABLE,
     "tuple_type": "must be a list in square brackets",
     "string_type": "must be text in quotes",
     "string_too_short": "must not be empty",
@@ -44,9 +47,13 @@ def load_study(path: str | Path, *, seed: int | None = None, cells: int | None =
     Raises
     ------
     StudyError, UnknownName
-        With the file, the path of the key, the value and what is allowed. One at a time.
-    DataError
-        A data file that the study names and that cannot be used.
+        With the file, the path of the key, the value and what is allowed. One at a time. What is
+        wrong with a data file that the study names is said at the key that names it.
+
+    Warns
+    -----
+    UnusualValue
+        Once for every value that is possible and outside common practice.
     """
     path = Path(path)
     file = str(path)
@@ -64,7 +71,10 @@ def load_study(path: str | Path, *, seed: int | None = None, cells: int | None =
         text = "\0"
     if "\0" in text:
         raise _unreadable(file, "must be a TOML text in UTF-8; this is binary")
-    return parse_study(text, file=file, base=path.parent, seed=seed, cells=cells)
+    study = parse_study(text, file=file, base=path.parent, seed=seed, cells=cells)
+    for line in unusual(study):
+        warnings.warn(f"{file}: {line}", UnusualValue, stacklevel=2)
+    return study
 
 
 def parse_study(
@@ -89,7 +99,7 @@ def parse_study(
 
     Raises
     ------
-    StudyError, UnknownName, DataError
+    StudyError, UnknownName
         As for `load_study`.
     """
     if not text.strip():
@@ -141,10 +151,20 @@ def _translated(file: str, raw: Mapping[str, Any], errors: ValidationError) -> P
     if first["type"] == "unknown_name":
         where = f"{file}: {key}" if key else file
         return UnknownName(ctx["kind"], ctx["name"], ctx["known"], where=where)
+    if path and path[-1] == "[key]":  # where pydantic puts what is wrong with a key itself
+        return StudyError(file=file, key=key_text(path[:-1]), allowed="must have a name")
     value = ctx["value"] if "value" in ctx else None if inner else first["input"]
     if "value" not in ctx and first["type"] == "refused" and isinstance(value, Mapping | list):
         value = None  # a whole table says nothing that the key does not say
-    return StudyError(file=file, key=key or "study", value=value, allowed=_allowed(first, ctx))
+    allowed = _allowed(first, ctx)
+    if allowed == _TABLE and _are_tables(first["input"]):
+        value, allowed = None, f"must be one table; write [{key}], in single brackets"
+    return StudyError(file=file, key=key or "study", value=value, allowed=allowed)
+
+
+def _are_tables(value: Any) -> bool:
+    """Return whether a value is what double brackets give."""
+    return isinstance(value, list) and all(isinstance(entry, Mapping) for entry in value)
 
 
 def _allowed(error: Mapping[str, Any], ctx: Mapping[str, Any]) -> str:

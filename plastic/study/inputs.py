@@ -24,7 +24,6 @@ from plastic.quantities import (
 )
 from plastic.study.cell import Conductance, Spread
 
-Concentration = Annotated[float, Quantity("concentration", above=0, high=1000)]
 Distance = Annotated[float, Quantity("length", low=0, high=1e5)]
 Share = Annotated[float, Quantity("number", above=0, high=1)]
 Likely = Annotated[float, Quantity("number", above=0, high=1)]
@@ -74,11 +73,16 @@ class Release(Part):
     facilitation: Time = 0.0
 
 
+def _concentration(low: float, high: float) -> Quantity:
+    """Return a concentration; `low` to `high` mM is usual in mammalian slices (common practice)."""
+    return Quantity("concentration", above=0, high=1000, usual=(low, high))
+
+
 class Potassium(Part):
     """Concentrations of potassium, mM."""
 
-    inside: Concentration
-    outside: Concentration
+    inside: Annotated[float, _concentration(100, 160)]
+    outside: Annotated[float, _concentration(1, 10)]
 
     def reversal(self, temperature: float) -> float:
         """Return the reversal, mV, at a temperature in C."""
@@ -92,10 +96,10 @@ class Chloride(Part):
     together.
     """
 
-    inside: Concentration
-    outside: Concentration
-    bicarbonate_inside: Concentration | None = None
-    bicarbonate_outside: Concentration | None = None
+    inside: Annotated[float, _concentration(3, 40)]
+    outside: Annotated[float, _concentration(100, 160)]
+    bicarbonate_inside: Annotated[float, _concentration(5, 25)] | None = None
+    bicarbonate_outside: Annotated[float, _concentration(10, 40)] | None = None
     permeability_ratio: Annotated[float, Quantity("number", above=0, high=1)] | None = None
 
     @model_validator(mode="before")
@@ -144,7 +148,10 @@ class Receptor(Part):
     chloride: Chloride | None = None
     potassium: Potassium | None = None
     shunt: Flag = False
-    temperature: Annotated[float, Quantity("temperature", low=COLDEST, high=WARMEST)] | None = None
+    temperature: (
+        Annotated[float, Quantity("temperature", low=COLDEST, high=WARMEST, usual=(18.0, 40.0))]
+        | None
+    ) = None
     rise: Time
     decay: Duration
 

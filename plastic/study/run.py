@@ -83,14 +83,14 @@ def run(
     made = study if isinstance(study, Study) else load_study(study, seed=seed, cells=cells)
     if isinstance(study, Study) and (cells is not None or seed is not None):
         changes = {k: v for k, v in (("cells", cells), ("seed", seed)) if v is not None}
-        made = _changed(study, changes)
+        made = changed(study, changes)
     if out is not None:
         return _run_in(made, Path(out), workers, progress)
     with tempfile.TemporaryDirectory(prefix="plastic-") as folder:
         return _run_in(made, Path(folder) / "run", workers, progress)
 
 
-def _changed(study: Study, changes: dict[str, int]) -> Study:
+def changed(study: Study, changes: dict[str, int]) -> Study:
     """Return the study with other numbers of cells or another seed, keeping its source."""
     for key, value in changes.items():
         try:

@@ -14,6 +14,9 @@ ARM = ("rule", "route", "protocol")
 STATUSES = ("complete", "not_applicable", "stopped", "not_run")
 COMPLETE, NOT_APPLICABLE, STOPPED, NOT_RUN = range(4)
 
+#: said beside every count, so that a median is not taken over the cells that got there
+UNREACHED = " (infinite: not reached; no number: there before anything was learned)"
+
 _INPUT = (*ARM, "cell", "input", "reading")
 _CONTACT = (*ARM, "cell", "contact", "reading")
 _STRETCH = (*ARM, "cell", "stretch", "reading")
@@ -48,13 +51,13 @@ VARIABLES: dict[str, Variable] = {
     "sites": Variable(_CONTACT, "1", "release sites"),
     "diameter": Variable(_STRETCH, "um", "diameter of the dendrite"),
     "repeats_to_criterion": Variable(
-        _CELL, "1", "repeats until the expressed change reached the criterion"
+        _CELL, "1", "repeats until the expressed change reached the criterion" + UNREACHED
     ),
     "repeats_to_criterion_induced": Variable(
-        _CELL, "1", "repeats until the induced change reached the criterion"
+        _CELL, "1", "repeats until the induced change reached the criterion" + UNREACHED
     ),
     "minutes_to_criterion": Variable(
-        _CELL, "min", "time until the expressed change reached the criterion"
+        _CELL, "min", "time until the expressed change reached the criterion" + UNREACHED
     ),
     "verdict": Variable(_CELL, "1", "verdict on the expressed change", VERDICTS),
     "verdict_induced": Variable(_CELL, "1", "verdict on the induced change", VERDICTS),
@@ -67,7 +70,7 @@ VARIABLES: dict[str, Variable] = {
     "realised_lag": Variable(
         _CELL,
         "ms",
-        "mean realised lag, first presynaptic spike of a repeat to the next spike of the soma",
+        "median realised lag, first presynaptic spike of a repeat to the nearest spike of the soma",
     ),
     "ceiling": Variable(_CELL, "1", "factor at which every channel of the route is at its limit"),
 }

@@ -158,21 +158,35 @@ def load(path: str | Path) -> xr.Dataset:
     Raises
     ------
     StoreError
-        When there is no such file, or it is truncated or was not made by plastic.
+        When there is no such file, or it cannot be read, is truncated or was not made by plastic.
     """
     file = Path(path)
     file = file / RESULTS if file.is_dir() else file
     if not file.exists():
         raise StoreError(f"{file}: there is no such results file (`plastic run STUDY` makes one)")
     try:
+        with open(file, "rb"):
+            pass
+    except OSError as error:
+        raise StoreError(f"{file}: cannot be read ({error.strerror})") from None
+    try:
         with xr.open_dataset(file, engine="h5netcdf") as opened:
             found = opened.load()
-    except Exception as error:  # h5py and xarray raise many kinds for a damaged file
-        reason = str(error).split("\n")[0]
-        raise StoreError(f"{file}: truncated, or no results file ({reason})") from None
+    except Exception:  # h5py and xarray raise many kinds for a damaged file, none for people
+        raise StoreError(f"{file}: truncated, or no results file{_way_out(file)}") from None
     if "study_hash" not in found.attrs:
         raise StoreError(f"{file}: was not made by `plastic run`")
     return found
+
+
+def _way_out(file: Path) -> str:
+    """Return what to do about damaged results beside which the run's blocks are."""
+    if not (file.parent / MARK).exists() or not (file.parent / BLOCKS).is_dir():
+        return ""
+    return (
+        f"; the finished blocks in {file.parent / BLOCKS} are kept: delete {file.name} and give "
+        "the same `plastic run` again"
+    )
 
 
 def largest_bytes(study: Study) -> int:

@@ -66,7 +66,11 @@ SEARCHED, FARTHEST = 48, 1e3
 
 @dataclass(frozen=True)
 class Judgement:
-    """What became of every cell of an arm, each array of shape (cell,)."""
+    """What became of every cell of an arm, each array of shape (cell,).
+
+    Repeats and minutes are infinite where the criterion was not reached, and no number where the
+    cell was there before anything was learned, so that a median leaves such cells out.
+    """
 
     verdict: Ints
     repeats: Floats
@@ -77,7 +81,6 @@ def judge(
     fires: Floats,
     goal: float,
     *,
-    baseline: int,
     repeats: Ints,
     minutes: Floats,
     factor: Floats,
@@ -90,11 +93,10 @@ def judge(
     Parameters
     ----------
     fires : array, shape (cell, reading)
-        Probability that the input alone fires the cell.
+        Probability that the input alone fires the cell; the first reading is before any event. A
+        cell that test pulses teach during the baseline is reached, at 0 repeats.
     goal : float
         The probability that counts as driving it.
-    baseline : int
-        Reading at the end of the baseline.
     repeats, minutes : array, shape (reading,)
         Repeats completed, and minutes since the induction started.
     factor : array, shape (cell, reading)
@@ -105,7 +107,7 @@ def judge(
     reachable : array, shape (cell,)
         Whether the route can make the input drive the cell at all.
     """
-    above = fires[:, baseline + 1 :] >= goal
+    above = fires[:, 1:] >= goal
     first = np.argmax(above, axis=1)
     reached = above.any(axis=1)
     verdict = np.full(len(fires), NOT_WITHIN)
@@ -115,15 +117,10 @@ def judge(
         verdict[(partner_fired < PARTNER_SHARE) & reachable] = PARTNER
     verdict[reached & above[:, -1]] = REACHED
     verdict[reached & ~above[:, -1]] = LOST
-    already = fires[:, baseline] >= goal
+    already = fires[:, 0] >= goal
     verdict[already] = ALREADY
-    counts = reached & ~already
-    at = baseline + 1 + first
-    return Judgement(
-        verdict,
-        np.where(counts, repeats[at], np.nan),
-        np.where(counts, minutes[at], np.nan),
-    )
+    told = [np.where(reached, row[1 + first], np.inf) for row in (repeats, np.maximum(minutes, 0))]
+    return Judgement(verdict, *(np.where(already, np.nan, row) for row in told))
 
 
 def reach(

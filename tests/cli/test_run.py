@@ -1,5 +1,6 @@
 """`plastic run` and `plastic compare` around results that are given; the simulation has its own."""
 
+import warnings
 from pathlib import Path
 
 import pytest
@@ -7,6 +8,7 @@ import pytest
 import plastic
 from plastic.cli import main
 from plastic.cli.run import CAUTION, default_out
+from plastic.study.half_step import ArmChange, Change, StepCheck
 from tests.report.conftest import STUDY, fake_dataset
 
 
@@ -100,3 +102,49 @@ def test_a_study_that_cannot_be_used_is_one_line(study, asked, capsys):
 def test_a_study_that_is_not_there_is_one_line(tmp_path, capsys):
     assert main(["run", str(tmp_path / "none.toml")]) == 2
     assert "there is no such file" in capsys.readouterr().err
+
+
+def test_half_the_time_step_is_checked_when_asked_for_and_only_then(
+    study, asked, capsys, monkeypatch
+):
+    still = Change(0.0, 0.0)
+    arm = ArmChange("r", "q", "p", still, still, still, 1.0, 0, 9, 0, 0.0)
+    given = {}
+
+    def check(study, *, workers, progress):
+        given.update(title=study.title, workers=workers)
+        progress(1, 1)
+        return StepCheck(0.1, 3, (arm,))
+
+    monkeypatch.setattr(plastic, "check_dt", check, raising=False)
+    assert main(["run", str(study), "--no-figures"]) == 0
+    assert "Half the time step" not in capsys.readouterr().out
+    assert given == {}
+    assert main(["run", str(study), "--no-figures", "--check-dt", "--workers", "2"]) == 0
+    text = capsys.readouterr().out
+    assert "Half the time step: 0.05 instead of 0.1 ms, in 3 simulated cells" in text
+    assert "dt = 0.1 ms is fine" in text
+    assert given == {"title": "An invented pair of pathways", "workers": 2}
+
+
+def test_what_is_unusual_is_one_line_and_the_run_goes_on(study, asked, capsys):
+    odd = STUDY.replace('axial = "150 ohm cm"', 'axial = "400 ohm cm"')
+    study.write_text(odd.replace('diameter = "2 um"', 'diameter = "15 um"'), encoding="utf-8")
+    assert main(["run", str(study), "--no-figures"]) == 0
+    assert capsys.readouterr().err.splitlines() == [
+        f"plastic: {study}: {what}: possible but unusual; {usual} is usual (common practice)"
+        for what, usual in (
+            ("cell.membrane.axial = 400 ohm cm", "70 to 300 ohm cm"),
+            ("cell.dendrite.apical.diameter = 15 um", "0.2 to 10 um"),
+        )
+    ]
+
+
+def test_other_warnings_are_shown_as_they_were(study, asked, monkeypatch):
+    def strange(*args, **options):
+        warnings.warn("strange", RuntimeWarning, stacklevel=2)
+        return fake_dataset()
+
+    monkeypatch.setattr(plastic, "run", strange)
+    with pytest.warns(RuntimeWarning, match="strange"):
+        main(["run", str(study), "--no-figures", "--out", str(study.parent)])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import Any
 
 import numpy as np
 import pytest
@@ -63,6 +64,23 @@ def test_times_that_cannot_be_are_refused_by_name(
 def test_an_end_that_cannot_be_is_refused(compiled: bool, end: float) -> None:
     with pytest.raises(Misfit, match=r"end: got .* but expected finite times in ms, 0 or later"):
         impose(RULE, [1.0], [2.0], end=end, compiled=compiled)
+
+
+@both_loops
+@pytest.mark.parametrize(
+    ("rule", "said"),
+    [
+        (PairTiming, r"got the class PairTiming but expected an instance, such as PairTiming\(\)"),
+        ("pair_timing", r"got 'pair_timing' but .* such as plastic\.rules\.find\(name\)\(\)"),
+        (None, "got None but expected an instance"),
+    ],
+    ids=["class", "name", "nothing"],
+)
+def test_a_rule_that_is_no_instance_is_refused_by_name(
+    compiled: bool, rule: Any, said: str
+) -> None:
+    with pytest.raises(Misfit, match=f"^rule: {said}"):
+        impose(rule, [1.0], [2.0], compiled=compiled)
 
 
 class Endless(Rule):
@@ -129,6 +147,14 @@ def test_without_spikes_nothing_happens(compiled: bool) -> None:
     data = impose(RULE, [], [], readings=[0.0, 5.0], compiled=compiled)
     assert data.w.values.tolist() == data.factor.values.tolist() == [[1.0, 1.0]]
     assert impose(RULE, {}, [5.0], compiled=compiled).factor.shape == (0, 2)
+
+
+@both_loops
+@pytest.mark.parametrize("pre", [[], {"a": [], "b": []}], ids=["one", "two inputs"])
+def test_without_spikes_the_end_is_the_start(compiled: bool, pre: Any) -> None:
+    data = impose(RULE, pre, [], compiled=compiled)
+    assert data.time.values.tolist() == [0.0, 0.0]
+    assert (data.factor == 1.0).all()
 
 
 @both_loops

@@ -262,7 +262,7 @@ def test_conductances_fade_as_differences_of_exponentials() -> None:
     peak = np.array([2.0, 1.0, 0.5])
     slow, fast = peak.copy(), peak * (rise > 0)
     for k in range(1, 60):
-        assert steps.fade(groups, slow, fast)
+        assert steps.fade(groups, slow, fast, np.zeros(3))
         early = np.exp(-k * DT / np.where(rise > 0, rise, 1e-3))
         expected = peak * (np.exp(-k * DT / decay) - early)
         np.testing.assert_allclose(slow - fast, expected, rtol=1e-11)
@@ -270,10 +270,10 @@ def test_conductances_fade_as_differences_of_exponentials() -> None:
 
 def test_a_conductance_that_has_faded_is_over() -> None:
     groups = groups_of(np.array([DT]), np.array([0.3 * DT]), np.array([70.0]))  # e-fold in a step
-    slow, fast = np.array([5.0 * steps.CUT]), np.array([1.0 * steps.CUT])
-    assert steps.fade(groups, slow, fast)
-    assert not steps.fade(groups, slow, fast)
-    assert (slow[0], fast[0]) == (0.0, 0.0)
+    slow, fast, ends = np.array([5.0]), np.array([1.0]), np.array([1.0])
+    assert steps.fade(groups, slow, fast, ends)
+    assert not steps.fade(groups, slow, fast, ends)
+    assert (slow[0], fast[0], ends[0]) == (0.0, 0.0, 0.0)
 
 
 # ---- routes

@@ -61,7 +61,7 @@ VALUES: dict[str, Case] = {
     # ranges
     "negative diameter": (
         'diameter = "2 um"', 'diameter = "-2 um"',
-        ["cell.dendrite.apical.diameter = '-2 um': must be above 0 um and at most 100000 um"],
+        ["cell.dendrite.apical.diameter = '-2 um': must be above 0 um and at most 100 um; 0.2 to"],
     ),
     "probability above 1": (
         "probability = 0.4, highest = 0.9, quantum = \"0.3", "probability = 1.4, quantum = \"0.3",
@@ -135,7 +135,7 @@ VALUES: dict[str, Case] = {
     "no chloride": (
         'reversal = "-75 mV"',
         'chloride = { inside = "0 mM", outside = "130 mM" }, temperature = "32 degC"',
-        ["brake.receptor.chloride.inside = '0 mM': must be above 0 mM and at most 1000 mM"],
+        ["brake.receptor.chloride.inside = '0 mM': must be above 0 mM and at most 1000 mM; 3 to"],
     ),
     "chloride in millivolts": (
         'reversal = "-75 mV"',

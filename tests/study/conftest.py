@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import shutil
 from pathlib import Path
 
 import pytest
@@ -23,3 +24,9 @@ def finished(tmp_path_factory: pytest.TempPathFactory) -> Path:
 def results(finished: Path) -> xr.Dataset:
     """The results of the run."""
     return plastic.load(finished)
+
+
+@pytest.fixture
+def folder(finished: Path, tmp_path: Path) -> Path:
+    """A copy of the finished run, to be damaged."""
+    return Path(shutil.copytree(finished, tmp_path / "run"))

@@ -7,15 +7,16 @@ from pathlib import Path
 
 import pytest
 
-from plastic.errors import DataError, PlasticError, StudyError
+from plastic.errors import PlasticError, StudyError
 from plastic.study.file import LARGEST, load_study, parse_study
 from plastic.study.model import Study
 from plastic.study.starter import STARTER
 from tests.study.bad_parts import PARTS
+from tests.study.bad_ranges import RANGES
 from tests.study.bad_values import VALUES
 from tests.study.edits import edited, refused
 
-CASES = {**VALUES, **PARTS}
+CASES = {**VALUES, **PARTS, **RANGES}
 
 
 @pytest.mark.parametrize("case", CASES)
@@ -128,9 +129,43 @@ def test_recorded_times_are_looked_for_beside_the_study(tmp_path: Path) -> None:
     assert list(study.schedules()["bursts"].pattern["weak"]) == [500, 1500]
 
 
-def test_recorded_times_that_cannot_be_used_are_named_with_their_line(tmp_path: Path) -> None:
-    (tmp_path / "weak.csv").write_text("1.5\n0.5\n", encoding="utf-8")
-    with pytest.raises(DataError, match=r"weak\.csv: line 2 = '0\.5': must be later"):
-        parse_study(edited(RECORDED, ALONE), base=tmp_path)
-    with pytest.raises(DataError, match=r"weak\.csv: cannot be read: no such file"):
+@pytest.mark.parametrize(
+    ("content", "extra", "said"),
+    [
+        ("1.5\n0.5\n", "", "line 2 = '0.5': must be later than the one before (s)"),
+        ("time_ms\n1\n", "", "line 1 = 'time_ms': says ms, but the unit given is 's'"),
+        ("sweep,spike\n1,2\n", 'column = "spikes"\n', "line 1: no column is called 'spikes'; did "
+         "you mean 'spike'? (known: spike, sweep)"),
+        ("0.5\n1.5\n", 'repeat = { times = 2, every = "1 s" }\n',
+         "the last time, 1500 ms, must come before the next repeat, after 1000 ms"),
+    ],
+    ids=["out of order", "unit", "column", "repeat"],
+)  # fmt: skip
+def test_recorded_times_that_cannot_be_used_are_named_with_study_key_file_and_line(
+    tmp_path: Path, content: str, extra: str, said: str
+) -> None:
+    (tmp_path / "weak.csv").write_text(content, encoding="utf-8")
+    with pytest.raises(StudyError) as caught:
+        parse_study(edited((RECORDED[0], RECORDED[1] + extra), ALONE), base=tmp_path)
+    assert str(caught.value) == f"study.toml: protocol.bursts.files.weak = 'weak.csv': {said}"
+
+
+def test_a_recording_that_is_not_there_is_named_with_study_key_and_place(tmp_path: Path) -> None:
+    with pytest.raises(StudyError, match=r"bursts\.files\.weak = .*elsewhere.*: no such file"):
         parse_study(edited(RECORDED, ALONE), base=tmp_path / "elsewhere")
+
+
+@pytest.mark.parametrize("name", ['""', '" "'])
+@pytest.mark.parametrize("table", ["input.weak", "protocol.bursts", "cell.dendrite.apical"])
+def test_a_table_without_a_name_is_refused_in_plain_words(table: str, name: str) -> None:
+    room = table.rpartition(".")[0]
+    error = refused(edited((f"[{table}]", f"[{room}.{name}]")))
+    assert str(error) == f"study.toml: {room}.{name}: must have a name"
+
+
+@pytest.mark.parametrize("table", ["cell", "compare", "input.weak", "protocol.bursts"])
+def test_double_brackets_are_answered_with_single_ones(table: str) -> None:
+    text = STARTER.replace(f"[{table}]", f"[[{table}]]", 1)
+    assert str(refused(text)) == (
+        f"study.toml: {table}: must be one table; write [{table}], in single brackets"
+    )

@@ -5,7 +5,6 @@ from __future__ import annotations
 import errno
 import json
 import os
-import shutil
 import stat
 import subprocess
 import sys
@@ -13,7 +12,6 @@ from collections.abc import Callable
 from pathlib import Path
 from typing import Any
 
-import h5netcdf
 import numpy as np
 import pytest
 import xarray as xr
@@ -25,12 +23,6 @@ from plastic.study.store import BLOCKS, MARK, RESULTS, Folder, replacing, study_
 from tests.study.small import CONTROLS, SMALL, study, text
 
 FULL = OSError(errno.ENOSPC, os.strerror(errno.ENOSPC))
-
-
-@pytest.fixture
-def folder(finished: Path, tmp_path: Path) -> Path:
-    """A copy of the finished run, to be damaged."""
-    return Path(shutil.copytree(finished, tmp_path / "run"))
 
 
 def snapshot(path: Path) -> dict[str, bytes]:
@@ -203,66 +195,6 @@ def test_a_refusal_on_the_command_line_is_one_line(
 )
 def test_a_study_is_the_same_when_its_results_are(one: Any, other: Any, same: bool) -> None:
     assert (study_hash(one) == study_hash(other)) is same
-
-
-# ---- damage
-
-
-@pytest.mark.parametrize("kept", [0, 7, 0.3, 0.999])
-def test_truncated_results_are_a_clear_error(folder: Path, kept: float) -> None:
-    file = folder / RESULTS
-    whole = file.read_bytes()
-    file.write_bytes(whole[: int(kept * len(whole)) if kept < 1 else int(kept)])
-    for read in (plastic.load, resumed):
-        with pytest.raises(StoreError, match=r"results\.nc: truncated, or no results file"):
-            read(folder)
-
-
-def test_a_netcdf_file_of_others_is_refused(tmp_path: Path) -> None:
-    with h5netcdf.File(tmp_path / "other.nc", "w") as file:
-        file.dimensions = {"x": 2}
-        file.create_variable("y", ("x",), data=np.zeros(2))
-    with pytest.raises(StoreError, match="was not made by `plastic run`"):
-        plastic.load(tmp_path / "other.nc")
-
-
-def test_results_that_are_not_there_say_how_to_get_them(tmp_path: Path) -> None:
-    with pytest.raises(StoreError, match=r"results\.nc: there is no such results file"):
-        plastic.load(tmp_path)
-
-
-def flipped(data: bytes) -> bytes:
-    middle = len(data) // 2
-    return data[:middle] + bytes([data[middle] ^ 1]) + data[middle + 1 :]
-
-
-@pytest.mark.parametrize(
-    "damage",
-    [
-        lambda data: data[: len(data) // 2],
-        lambda data: b"",
-        lambda data: b"no block at all",
-        flipped,
-    ],
-    ids=["truncated", "empty", "garbage", "one bit"],
-)
-def test_a_damaged_block_is_made_again(folder: Path, damage: Callable[[bytes], bytes]) -> None:
-    before = (folder / RESULTS).read_bytes()
-    (folder / RESULTS).unlink()
-    block = sorted((folder / BLOCKS).iterdir())[2]
-    whole = block.read_bytes()
-    block.write_bytes(damage(whole))
-    resumed(folder)
-    assert (folder / RESULTS).read_bytes() == before
-    assert block.read_bytes() != damage(whole)
-
-
-def test_without_its_blocks_a_run_is_made_again(folder: Path) -> None:
-    before = (folder / RESULTS).read_bytes()
-    (folder / RESULTS).unlink()
-    shutil.rmtree(folder / BLOCKS)
-    resumed(folder)
-    assert (folder / RESULTS).read_bytes() == before
 
 
 # ---- read anywhere

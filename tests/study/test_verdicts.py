@@ -30,11 +30,10 @@ def judged(
     paired: bool = True,
     reachable: bool = True,
 ) -> Judgement:
-    """Judge one cell; the baseline is the second reading."""
+    """Judge one cell; the baseline is the first two readings."""
     return judge(
         np.array([fires]),
         0.5,
-        baseline=1,
         repeats=REPEATS,
         minutes=MINUTES,
         factor=np.array([[1.0] * 5 + [factor]]),
@@ -71,8 +70,9 @@ def test_the_verdicts_are_these_seven() -> None:
 @pytest.mark.parametrize(
     ("fires", "facts", "expected"),
     [
-        ([HIGH, LOW, LOW, LOW, LOW, HIGH], {}, "reached"),  # the end of the baseline counts
-        ([LOW, HIGH, LOW, LOW, LOW, LOW], {}, "already_at_baseline"),
+        ([HIGH, LOW, LOW, LOW, LOW, HIGH], {}, "already_at_baseline"),  # before any event
+        ([LOW, HIGH, HIGH, HIGH, HIGH, HIGH], {}, "reached"),  # test pulses taught it
+        ([LOW, HIGH, LOW, LOW, LOW, LOW], {}, "reached_then_lost"),
         ([LOW, LOW, HIGH, HIGH, HIGH, HIGH], {"factor": 0.5}, "reached"),
         ([LOW, LOW, HIGH, HIGH, HIGH, HIGH], {"partner": 0.0}, "reached"),
         (FLAT, {"factor": 0.9, "partner": 0.0}, "partner_failed"),
@@ -89,17 +89,24 @@ def test_what_is_said_when_several_verdicts_hold(
     assert word(judged(fires, **facts)) == expected  # type: ignore[arg-type]
 
 
-def test_the_count_is_that_of_the_first_reading_at_the_criterion_after_the_baseline() -> None:
-    late = judged([LOW, LOW, LOW, 0.5, LOW, HIGH])
-    assert (late.repeats[0], late.minutes[0]) == (2.0, 1.0)
-    after = judged([HIGH, LOW, LOW, LOW, LOW, HIGH])
-    assert (after.repeats[0], after.minutes[0]) == (3.0, 9.0)
-
-
-@pytest.mark.parametrize("fires", [FLAT, [HIGH] * 6, [LOW, LOW, LOW, LOW, LOW, 0.4999]])
-def test_without_reaching_there_is_no_count(fires: list[float]) -> None:
-    assert np.isnan(judged(fires).repeats[0])
-    assert np.isnan(judged(fires).minutes[0])
+@pytest.mark.parametrize(
+    ("fires", "expected"),
+    [
+        ([LOW, LOW, LOW, 0.5, LOW, HIGH], (2.0, 1.0)),
+        ([LOW, LOW, LOW, LOW, LOW, HIGH], (3.0, 9.0)),
+        ([LOW, HIGH, HIGH, HIGH, HIGH, HIGH], (0.0, 0.0)),  # taught by test pulses
+        (FLAT, (np.inf, np.inf)),
+        ([LOW, LOW, LOW, LOW, LOW, 0.4999], (np.inf, np.inf)),
+        ([HIGH] * 6, (np.nan, np.nan)),
+        ([HIGH, LOW, LOW, LOW, LOW, HIGH], (np.nan, np.nan)),
+    ],
+)
+def test_the_count_is_that_of_the_first_reading_at_the_criterion(
+    fires: list[float], expected: tuple[float, float]
+) -> None:
+    """Infinite where it is never reached, no number where there was nothing to reach."""
+    found = judged(fires)
+    assert (found.repeats[0], found.minutes[0]) == pytest.approx(expected, nan_ok=True)
 
 
 def threshold(value: float) -> Change:
