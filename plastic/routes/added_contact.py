@@ -9,7 +9,7 @@ from plastic.routes._interface import Route
 class AddedContact(Route):
     """New sites of the same input at a nearer location, never fewer than none.
 
-    The place is the input's ``added_contact``. A collateral cannot explain a change seen at ten
+    The place is the input's ``added_contact``. A new contact cannot explain a change seen at ten
     minutes: lasting new spines need half an hour, mature synapses hours.
     """
 

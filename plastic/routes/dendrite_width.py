@@ -10,8 +10,10 @@ class DendriteWidth(Route):
     """The dendrite on the path widens, for every input on it, and not always to its gain.
 
     Each stretch follows the mean of factor^share over all excitatory contacts at or beyond it.
-    Widening lowers the axial resistance and the local saturation, and adds membrane to charge: for
-    a weak input at the tip of a sealed dendrite it helps only if G_soma R_axial + L coth L > 3.
+    Widening lowers the axial resistance and the local saturation, and adds membrane to charge. The
+    steady response of the soma to a weak input at the tip of a sealed dendrite, and with it the
+    charge of its EPSP, grows only if G_soma R_axial + L coth L > 3; the peak of a brief EPSP may
+    gain somewhat earlier, and a strong input gains by saturating less.
     Activity-driven widening of a dendritic shaft has not been measured; it is a hypothesis.
     """
 

@@ -8,7 +8,7 @@ from typing import Any
 import numpy as np
 
 from plastic.errors import Misfit, StudyError, UnknownName
-from plastic.membrane.tree import SOMA
+from plastic.membrane.tree import SOMA, Floats
 from plastic.protocols import INJECTED
 from plastic.quantities import key_text
 from plastic.study.inputs import Input, Location
@@ -25,6 +25,8 @@ from plastic.study.model import Study
 #:
 #: A fifth is enough for 0.1 %; a whole time constant per step gives 0.25 %.
 STEPS = 5.0
+#: ms; no current in this cell needs a shorter step
+SHORTEST = 1e-3
 
 
 class _Judge:
@@ -94,6 +96,11 @@ def _check_places(judge: _Judge, name: str, it: Input) -> None:
         raise judge.refuse(f"{key}.contacts", f"shares {shares}", allowed)
     if it.added_contact is not None:
         _check_place(judge, f"{key}.added_contact", it.added_contact)
+        nearest = min(at for _, at, _ in it.places)
+        if it.added_contact.at >= nearest:
+            allowed = f"must be nearer to the soma than the input itself, {nearest:g} um"
+            where = f"{key}.added_contact.at"
+            raise judge.refuse(where, f"{it.added_contact.at:g} um", allowed)
 
 
 def _check_place(judge: _Judge, key: str, place: Location) -> None:
@@ -159,6 +166,8 @@ def _check_step(judge: _Judge) -> None:
             if value > 0
         ]
     key, fastest = min(constants, key=lambda pair: pair[1])
+    if study.dt < SHORTEST:
+        raise judge.refuse("dt", f"{study.dt:g} ms", f"must be at least {SHORTEST:g} ms")
     if study.dt > fastest / STEPS * (1 + 1e-9):
         allowed = (
             f"must be at most {fastest / STEPS:g} ms, a fifth of the fastest time constant "
@@ -222,7 +231,8 @@ def _check_protocols(judge: _Judge) -> None:
                 where = key_text(("protocol", name, *path))
                 judge.known("input", used, study.inputs, where)
         try:
-            protocol.schedule(name, learns=study.compare.learns)
+            schedule = protocol.schedule(name, learns=study.compare.learns)
+            _check_injected(judge, name, np.sort(schedule.injected))
         except Misfit as error:
             allowed = f"{error.got}; must be {error.expected}"
             raise judge.refuse(f"protocol.{name}", None, allowed) from None
@@ -235,6 +245,18 @@ def _check_protocols(judge: _Judge) -> None:
         if not any(len(schedule.times.get(name, ())) for schedule in plain):
             allowed = "must be stimulated by a protocol; none of them does"
             raise judge.refuse(f"compare.learns[{k}]", name, allowed)
+
+
+def _check_injected(judge: _Judge, name: str, times: Floats) -> None:
+    """Refuse forced spikes that would fall into the refractory period of the one before."""
+    close = np.flatnonzero(np.diff(times) < judge.study.cell.refractory - 1e-9)
+    if len(close):
+        first, second = times[close[0] : close[0] + 2]
+        raise judge.refuse(
+            f"protocol.{name}",
+            f"injected at {first:g} and {second:g} ms",
+            f"must be at least the refractory period, {judge.study.cell.refractory:g} ms, apart",
+        )
 
 
 def _check_controls(judge: _Judge) -> None:

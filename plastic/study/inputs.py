@@ -176,6 +176,13 @@ class Receptor(Part):
         return data
 
     @model_validator(mode="after")
+    def _check_times(self) -> Receptor:
+        if self.rise >= self.decay:
+            allowed = f"must be shorter than the decay, {self.decay:g} ms"
+            raise refusal(allowed, path=("rise",), value=f"{self.rise:g} ms")
+        return self
+
+    @model_validator(mode="after")
     def _check_reversal(self) -> Receptor:
         found = self.reversal_at(0.0)
         if not POTENTIAL.low <= found <= POTENTIAL.high:

@@ -16,8 +16,8 @@ dt = "0.1 ms"                  # step: at most a fifth of the fastest time const
 spikes = "leaky"               # a spike when the soma reaches threshold, then a reset
 rest = "-68 mV"                # resting potential
 threshold = { mean = "-55 mV", sd = "3 mV" }  # of the spike; the spread is over cells
-reset = "-65 mV"               # where the soma restarts after a spike
-refractory = "2 ms"            # during which it cannot fire again
+reset = "-75 mV"               # where the soma restarts; above rest, the dendrite fires it again
+refractory = "3 ms"            # during which it cannot fire again
 rest_of_cell = "5 nS"          # conductance of the soma and of all that is not written out
 input_resistance_cv = 0.3      # spread of the input resistance over cells
 membrane = { resistance = "15 kohm cm^2", capacitance = "1 uF/cm^2", axial = "150 ohm cm" }
@@ -29,8 +29,16 @@ diameter = "2 um"              # uniform
 [input.weak]                   # the pathway that learns
 location = { on = "apical", at = "250 um" }    # path distance from the soma
 baseline_epsp = { target = "7 mV", cv = 0.3 }  # sites are recruited in each cell to this EPSP
-release = { sites = 50, probability = 0.4, highest = 0.9, quantum = "0.3 nS", quantum_cv = 0.3 }
 receptor = { reversal = "0 mV", rise = "0.5 ms", decay = "3 ms" }
+
+[input.weak.release]           # binomial; without short-term dynamics paired pulses are equal
+sites = 50
+probability = 0.4              # may be { mean = 0.4, cv = 0.2 }
+highest = 0.9                  # beyond which no learning brings the probability
+quantum = "0.3 nS"             # conductance of one quantum at its peak
+quantum_cv = 0.3
+depletion = "200 ms"           # sites refill with this time constant
+facilitation = "50 ms"         # the probability grows with each spike and falls back with this
 
 [input.strong]                 # the pathway that fires the cell
 location = { on = "apical", at = "60 um" }

@@ -37,14 +37,14 @@ VALUES: dict[str, Case] = {
     ),
     # units and numbers
     "wrong dimension": (
-        'refractory = "2 ms"', 'refractory = "2 mV"',
+        'refractory = "3 ms"', 'refractory = "2 mV"',
         ["study.toml: cell.refractory = '2 mV': in mV, not a time (write it like '10 ms')"],
     ),
     "no unit": ('rest = "-68 mV"', "rest = -68", ["cell.rest = -68: without a unit", "'-68 mV'"]),
     "unknown unit": ('rest = "-68 mV"', 'rest = "-68 mW"', ["cell.rest = '-68 mW': in mW, not"]),
     "no quantity": ('rest = "-68 mV"', 'rest = "low"', ["cell.rest = 'low': no quantity"]),
     "decimal comma": (
-        'refractory = "2 ms"', 'refractory = "2,5 ms"', ["cell.refractory = '2,5 ms': no quantity"],
+        'refractory = "3 ms"', 'refractory = "2,5 ms"', ["cell.refractory = '2,5 ms': no quantity"],
     ),
     "NaN": ('rest = "-68 mV"', 'rest = "nan mV"', ["cell.rest = 'nan mV': not a finite number"]),
     "NaN as a number": (
@@ -64,12 +64,11 @@ VALUES: dict[str, Case] = {
         ["cell.dendrite.apical.diameter = '-2 um': must be above 0 um and at most 100 um; 0.2 to"],
     ),
     "probability above 1": (
-        "probability = 0.4, highest = 0.9, quantum = \"0.3", "probability = 1.4, quantum = \"0.3",
+        "probability = 0.4      ", "probability = 1.4      ",
         ["input.weak.release.probability = 1.4: must be above 0 and at most 1"],
     ),
     "probability above its highest": (
-        "probability = 0.4, highest = 0.9, quantum = \"0.3",
-        "probability = 0.95, highest = 0.9, quantum = \"0.3",
+        "probability = 0.4      ", "probability = 0.95     ",
         ["input.weak.release.probability = 0.95: must be at most release.highest, 0.9"],
     ),
     "negative spread": (
@@ -87,7 +86,22 @@ VALUES: dict[str, Case] = {
         ["cell.rest = '-50 mV': must be below the threshold, -55 mV"],
     ),
     "reset above threshold": (
-        'reset = "-65 mV"', 'reset = "-55 mV"', ["cell.reset = '-55 mV': must be below"],
+        'reset = "-75 mV"', 'reset = "-55 mV"', ["cell.reset = '-55 mV': must be below"],
+    ),
+    "rise as long as the decay": (
+        'rise = "0.5 ms", decay = "3 ms" }', 'rise = "3 ms", decay = "3 ms" }',
+        ["input.weak.receptor.rise = '3 ms': must be shorter than the decay, 3 ms"],
+    ),
+    "rise longer than the decay": (
+        'rise = "0.5 ms", decay = "3 ms" }', 'rise = "3.001 ms", decay = "3 ms" }',
+        ["input.weak.receptor.rise = '3.001 ms': must be shorter than the decay, 3 ms"],
+    ),
+    "step of a picosecond": (
+        'dt = "0.1 ms"', 'dt = "1e-9 ms"', ["dt = '1e-09 ms': must be at least 0.001 ms"],
+    ),
+    "added contact farther out": (
+        "baseline_epsp = {", 'added_contact = { on = "apical", at = "340 um" }\nbaseline_epsp = {',
+        ["weak.added_contact.at = '340 um': must be nearer to the soma than the input itself, 250"],
     ),
     "EPSP beyond the driving force": (
         'target = "7 mV"', 'target = "70 mV"',

@@ -58,7 +58,7 @@ def test_the_good_study_that_the_cases_edit_is_good() -> None:
 
 
 def test_an_error_keeps_its_parts() -> None:
-    error = refused(edited(('refractory = "2 ms"', 'refractory = "2 mV"')))
+    error = refused(edited(('refractory = "3 ms"', 'refractory = "2 mV"')))
     assert isinstance(error, StudyError)
     assert (error.file, error.key, error.value) == ("study.toml", "cell.refractory", "2 mV")
 
