@@ -17,15 +17,18 @@ _DOORS = {
     "weight": "plastic.rules._interface",
     "state": "plastic.rules._interface",
     "trace": "plastic.rules._interface",
+    "Claim": "plastic.rules._interface",
     "parameter": "plastic.parameters",
     "impose": "plastic.engine.imposed",
     "present": "plastic.engine.presented",
     "run": "plastic.study.run",
     "load": "plastic.study.store",
+    "check_dt": "plastic.study.half_step",
     "compare": "plastic.report.comparison",
+    "check": "plastic.checking.check",
     "cell_sheet": "plastic.analysis.cell_sheet",
 }
-_ROOMS = ("rules", "routes", "protocols", "measures")
+_ROOMS = ("rules", "routes", "protocols", "measures", "laws")
 
 __all__ = ["__version__", *_DOORS, *_ROOMS]
 

@@ -24,7 +24,7 @@ class Guest(Rule):
     step: float = parameter(0.25, "1", low=0, source="invented for a test")
     w = weight(1.0, low=0.0, high=10.0)
 
-    def on_post(self):
+    def at_post(self):
         """Add one step."""
         return {"w": self.step}
 '''

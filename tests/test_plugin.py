@@ -34,7 +34,7 @@ class DoublingDemo(Rule):
 
     w = weight(1.0, low=0.0, high="w_max")
 
-    def on_pre(self, w: float) -> Changes:
+    def at_pre(self, w: float) -> Changes:
         """Double."""
         return {"w": self.gain * w}
 '''

@@ -18,13 +18,15 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 def run(args: argparse.Namespace) -> int:
     """Print every table, and write what is asked for."""
     import plastic
+    from plastic.cli._output import refuse_existing, write_new
     from plastic.report.tables import printed
 
+    refuse_existing(args.csv, "--csv")
     file = args.folder / "results.nc" if args.folder.is_dir() else args.folder
     dataset = plastic.load(file)
     comparison = plastic.compare(dataset)
     if args.csv is not None:
-        comparison.to_csv(args.csv)
+        write_new(args.csv, comparison.to_csv(), "--csv")
     if args.figures is not None:
         from plastic.report.figures import write_figures
 

@@ -1,6 +1,7 @@
 """Apply one rule to spike times from files, without a cell.
 
-A file holds one spike time a line; a header line and comment lines (#) are skipped.
+A file holds one spike time a line; a header line and comment lines (#) are skipped. A header that
+names another unit than --unit, such as time_s for ms, is refused.
 """
 
 from __future__ import annotations
@@ -23,6 +24,9 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
         "--post", type=Path, required=True, metavar="FILE", help="spikes of the cell"
     )
     parser.add_argument("--unit", default="ms", help="unit of the times in the files (default: ms)")
+    parser.add_argument(
+        "--column", metavar="NAME", help="the column with the times, in files that have several"
+    )
     parser.add_argument("--set", metavar="NAME", help="a parameter set of the rule")
     parser.add_argument(
         "--param", action="append", default=[], metavar="NAME=VALUE",
@@ -33,20 +37,49 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
 
 def run(args: argparse.Namespace) -> int:
     """Impose the spike times, print a short table and the final change."""
+    from plastic.cli._output import refuse_existing, write_new
     from plastic.protocols._recorded import read_times
     from plastic.report.tables import printed
 
+    refuse_existing(args.out, "--out")
     rule = _rule(args.rule, args.set, args.param)
-    pre, post = (list(read_times(path, unit=args.unit)) for path in (args.pre, args.post))
+    pre, post = (
+        list(read_times(path, unit=args.unit, column=args.column)) for path in (args.pre, args.post)
+    )
     grid, change = _table(rule, pre, post)
     if args.out is not None:
-        args.out.write_text(grid.csv(), encoding="utf-8")
-    printed([_shortened(grid, args.out)])
-    print(f"{len(pre)} presynaptic spikes, {len(post)} spikes of the cell")
+        write_new(args.out, grid.csv(), "--out")
+    for kind, path, times in (("pre", args.pre, pre), ("post", args.post, post)):
+        print(f"{kind}synaptic, {path.name}: {_train(times)}; times read in {args.unit}")
+    print()
+    kept = f"all of them in {args.out}" if args.out else "--out FILE.csv keeps them all"
+    printed([grid.shortened(SHOWN, kept)])
+    spikes = f"{len(pre)} presynaptic and {_counted(len(post), 'postsynaptic spike')}"
+    print(f"{_rounded(100 * change)} % after {spikes}")
     print(f"final change: {100 * change:+.6g} % of the baseline")
     if rule.illustrative:
         print(f"illustrative: {rule.illustrative}")
     return 0
+
+
+def _train(times: list[float]) -> str:
+    """Return number, span and mean rate of spikes, so that a wrong unit shows."""
+    count = _counted(len(times), "spike")
+    if len(times) < 2:
+        return f"{count} at {times[0] / 1000:.6g} s"
+    rate = 1000 * (len(times) - 1) / (times[-1] - times[0])
+    return (
+        f"{count} from {times[0] / 1000:.6g} to {times[-1] / 1000:.6g} s, mean rate {rate:.3g} Hz"
+    )
+
+
+def _counted(count: int, what: str) -> str:
+    return f"{count} {what}{'' if count == 1 else 's'}"
+
+
+def _rounded(value: float) -> str:
+    """Return a signed percentage in two digits, or in whole numbers from 10 on."""
+    return f"{value:+.0f}" if abs(value) >= 10 else f"{value:+.2g}"
 
 
 def _rule(name: str, chosen: str | None, given: list[str]) -> Any:
@@ -109,17 +142,3 @@ def _table(rule: Any, pre: list[float], post: list[float]) -> tuple[Any, float]:
     ]
     columns = ["time (ms)", "spike of", "factor", *(f"{name} of the rule" for name in names)]
     return Grid(f"{rule}", columns, rows, ["state just after each event"]), float(factor[-1]) - 1.0
-
-
-def _shortened(grid: Any, out: Path | None) -> Any:
-    """Return the first and last rows of a long table."""
-    from dataclasses import replace
-
-    if len(grid.rows) <= SHOWN:
-        return grid
-    half = SHOWN // 2
-    skipped = len(grid.rows) - SHOWN
-    gap = [f"... {skipped} more", *[""] * (len(grid.columns) - 1)]
-    where = f"all of them in {out}" if out else "--out FILE.csv keeps them all"
-    rows = [*grid.rows[:half], gap, *grid.rows[-half:]]
-    return replace(grid, rows=rows, notes=[*grid.notes, where])

@@ -1,10 +1,10 @@
-"""List rules, routes, protocols and measures."""
+"""List rules, routes, protocols, measures and laws."""
 
 from __future__ import annotations
 
 import argparse
 
-ROOMS = ("rules", "routes", "protocols", "measures")
+ROOMS = ("rules", "routes", "protocols", "measures", "laws")
 
 
 def add_arguments(parser: argparse.ArgumentParser) -> None:

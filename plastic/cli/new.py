@@ -16,7 +16,12 @@ def run(args: argparse.Namespace) -> int:
     from plastic.errors import StoreError
     from plastic.study.starter import STARTER
 
+    stem = args.name.removesuffix(".toml")
+    if stem.endswith("/") or not stem.strip(" ./"):
+        raise StoreError(f"{args.name!r} is no name; write one such as: plastic new first")
     path = Path(args.name if args.name.endswith(".toml") else f"{args.name}.toml")
+    if not path.parent.is_dir():
+        raise StoreError(f"{path}: there is no folder {path.parent}; make it first")
     try:
         with path.open("x", encoding="utf-8") as file:
             file.write(STARTER)

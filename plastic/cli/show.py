@@ -1,4 +1,4 @@
-"""Show one rule, route, protocol or measure: equation, parameters, sources, references."""
+"""Show one rule, route, protocol, measure or law: equation, parameters, sources, references."""
 
 from __future__ import annotations
 

@@ -309,14 +309,14 @@ def _adds(rule: type[Rule], names: tuple[str, ...]) -> tuple[bool, ...]:
 
 #: hook -> the functions that connect it: their arguments, the last of which takes the changes
 CONNECTIONS = {
-    "on_pre": {
-        "add_on_pre": "p, S, C, X, Y, fx, fy, i, site, t, D",
-        "move_on_pre": "p, C, X, Y, fx, fy, i, site, t, S",
+    "at_pre": {
+        "add_at_pre": "p, S, C, X, Y, fx, fy, i, site, t, D",
+        "move_at_pre": "p, C, X, Y, fx, fy, i, site, t, S",
     },
-    "on_post": {"add_on_post": "p, S, C, X, Y, fx, fy, i, site, t, amplitude, D"},
-    "on_presentation": {"add_on_presentation": "p, S, C, i, t, pre_rate, post_rate, D"},
-    "cell_on_post": {"add_cell_on_post": "p, C, Y, fy, t, DC"},
-    "cell_on_presentation": {"add_cell_on_presentation": "p, C, t, post_rate, DC"},
+    "at_post": {"add_at_post": "p, S, C, X, Y, fx, fy, i, site, t, amplitude, D"},
+    "at_presentation": {"add_at_presentation": "p, S, C, i, t, pre_rate, post_rate, D"},
+    "cell_at_post": {"add_cell_at_post": "p, C, Y, fy, t, DC"},
+    "cell_at_presentation": {"add_cell_at_presentation": "p, C, t, post_rate, DC"},
     "flow": {"add_flow": "p, S, i, dt, D"},
     "cell_flow": {"add_cell_flow": "p, C, dt, DC"},
 }

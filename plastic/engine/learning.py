@@ -117,16 +117,16 @@ class Learner:
             self._count(fired, arrived)
             return
         before = self._copy()
-        if "on_pre" in self.hooks:
+        if "at_pre" in self.hooks:
             for i in fired:
-                self._add(i, self._call("on_pre", {"t": t, **before[i]}))
-        if "on_post" in self.hooks:
+                self._add(i, self._call("at_pre", {"t": t, **before[i]}))
+        if "at_post" in self.hooks:
             for i in range(self.inputs):
                 if self.site_of[i] in arrived:
                     givens = {"t": t, "amplitude": arrived[self.site_of[i]], **before[i]}
-                    self._add(i, self._call("on_post", givens))
-        if "cell_on_post" in self.hooks and 0 in arrived:
-            self._add_cell(self._call("cell_on_post", {"t": t, **self._of_cell()}))
+                    self._add(i, self._call("at_post", givens))
+        if "cell_at_post" in self.hooks and 0 in arrived:
+            self._add_cell(self._call("cell_at_post", {"t": t, **self._of_cell()}))
         self._bound()
         self._jump(fired, list(arrived))
 
@@ -135,14 +135,14 @@ class Learner:
         before = self._copy()
         rates = {"t": self.t, "post_rate": post_rate}
         cell = (
-            self._call("cell_on_presentation", {**rates, **self._of_cell()})
-            if "cell_on_presentation" in self.hooks
+            self._call("cell_at_presentation", {**rates, **self._of_cell()})
+            if "cell_at_presentation" in self.hooks
             else {}
         )
-        if "on_presentation" in self.hooks:
+        if "at_presentation" in self.hooks:
             for i in range(self.inputs):
                 givens = {**rates, "pre_rate": float(pre_rates[i]), **before[i]}
-                self._add(i, self._call("on_presentation", givens))
+                self._add(i, self._call("at_presentation", givens))
         self._add_cell(cell)
         self._bound()
 

@@ -64,33 +64,33 @@ HAS_FLOW, HAS_CELL_FLOW = False, False
 
 
 @compiled
-def add_on_pre(p, S, C, X, Y, fx, fy, i, site, t, D):
-    """Add to D what on_pre changes of learner i."""
+def add_at_pre(p, S, C, X, Y, fx, fy, i, site, t, D):
+    """Add to D what at_pre changes of learner i."""
 
 
 @compiled
-def move_on_pre(p, C, X, Y, fx, fy, i, site, t, S):
-    """Change learner i at once by what on_pre says."""
+def move_at_pre(p, C, X, Y, fx, fy, i, site, t, S):
+    """Change learner i at once by what at_pre says."""
 
 
 @compiled
-def add_on_post(p, S, C, X, Y, fx, fy, i, site, t, amplitude, D):
-    """Add to D what on_post changes of learner i."""
+def add_at_post(p, S, C, X, Y, fx, fy, i, site, t, amplitude, D):
+    """Add to D what at_post changes of learner i."""
 
 
 @compiled
-def add_on_presentation(p, S, C, i, t, pre_rate, post_rate, D):
-    """Add to D what on_presentation changes of learner i."""
+def add_at_presentation(p, S, C, i, t, pre_rate, post_rate, D):
+    """Add to D what at_presentation changes of learner i."""
 
 
 @compiled
-def add_cell_on_post(p, C, Y, fy, t, DC):
-    """Add to DC what cell_on_post changes."""
+def add_cell_at_post(p, C, Y, fy, t, DC):
+    """Add to DC what cell_at_post changes."""
 
 
 @compiled
-def add_cell_on_presentation(p, C, t, post_rate, DC):
-    """Add to DC what cell_on_presentation changes."""
+def add_cell_at_presentation(p, C, t, post_rate, DC):
+    """Add to DC what cell_at_presentation changes."""
 
 
 @compiled
@@ -148,9 +148,9 @@ def flow_to(p, S, C, D, DC, low, high, dt):
 def present(p, S, C, D, DC, low, high, t, counts, post_count, window):
     """Close a window (ms): its counts become rates (Hz) and are presented to the rule."""
     post_rate = post_count * 1000.0 / window
-    add_cell_on_presentation(p, C, t, post_rate, DC)
+    add_cell_at_presentation(p, C, t, post_rate, DC)
     for i in range(S.shape[1]):
-        add_on_presentation(p, S, C, i, t, counts[i] * 1000.0 / window, post_rate, D)
+        add_at_presentation(p, S, C, i, t, counts[i] * 1000.0 / window, post_rate, D)
     for i in range(S.shape[1]):
         settle(S, D, low, high, i)
         counts[i] = 0.0
@@ -167,12 +167,12 @@ def learn(p, S, C, X, Y, fx, fy, D, DC, low, high, t, pre, n_pre, arrived, site_
         if arrived[site] > 0.0:
             some_post = True
             for i in range(site_first[site], site_first[site + 1]):
-                add_on_post(p, S, C, X, Y, fx, fy, i, site, t, arrived[site], D)
+                add_at_post(p, S, C, X, Y, fx, fy, i, site, t, arrived[site], D)
     for k in range(n_pre):
         i = pre[k]
-        add_on_pre(p, S, C, X, Y, fx, fy, i, site_of[i], t, D)
+        add_at_pre(p, S, C, X, Y, fx, fy, i, site_of[i], t, D)
     if arrived[0] > 0.0:
-        add_cell_on_post(p, C, Y, fy, t, DC)
+        add_cell_at_post(p, C, Y, fy, t, DC)
     if some_post:
         for i in range(S.shape[1]):
             settle(S, D, low, high, i)
@@ -585,7 +585,7 @@ def run_cell(w, cells, log, c, stop):
                         pre[n_pre] = i
                         n_pre += 1
                     else:
-                        move_on_pre(p, C, X, Y, fx, fy, i, learner_site[i], step * dt, S)
+                        move_at_pre(p, C, X, Y, fx, fy, i, learner_site[i], step * dt, S)
                         bound(S, low, high, i)
                         for row in range(N_PRE):
                             X[row, i] = X[row, i] + ux[row] if PRE_ADDS[row] else ux[row]

@@ -4,11 +4,22 @@ from __future__ import annotations
 
 import csv
 import math
+import re
 from pathlib import Path
 
 from plastic.errors import DataError, UnknownName
 from plastic.protocols._schedule import NEAREST
 from plastic.units import number_in
+
+#: what headers call units of time, in ms
+UNITS = {
+    **dict.fromkeys(("us", "µs", "usec"), 1e-3),
+    **dict.fromkeys(("ms", "msec", "milliseconds"), 1.0),
+    **dict.fromkeys(("s", "sec", "seconds"), 1000.0),
+    **dict.fromkeys(("min", "minutes"), 60_000.0),
+}
+#: a unit at the end of a header: time_s, time (ms), time [s], time/s, time s
+_ENDS_IN_A_UNIT = re.compile(r".*[\W_](?P<unit>[^\W\d_]+)\W*|(?P<alone>[^\W\d_]+)")
 
 
 def read_times(path: Path, *, unit: str, column: str | None = None) -> tuple[float, ...]:
@@ -22,7 +33,8 @@ def read_times(path: Path, *, unit: str, column: str | None = None) -> tuple[flo
     ----------
     path : Path
     unit : str
-        Unit of the times in the file; it is never guessed.
+        Unit of the times in the file; it is never guessed, and a header that ends in another
+        one is refused.
     column : str, optional
         Name of the column in the header; needed when there are several.
 
@@ -34,17 +46,28 @@ def read_times(path: Path, *, unit: str, column: str | None = None) -> tuple[flo
     ------
     DataError
         A file that cannot be read, is empty, or holds a time that is no number, not finite,
-        negative, out of order, or within 0.1 ms of the one before.
+        negative, out of order, or within 0.1 ms of the one before; a header that ends in
+        another unit.
     UnknownName
         A column that is not in the header.
     """
     file = path.name
-    rows = _rows(path)
-    where, rows = _column(file, rows, column)
+    lines = _rows(path)
+    where, rows = _column(file, lines, column)
     scale = number_in(f"1 {unit}", "time")
+    if len(rows) < len(lines):
+        number, header = lines[0]
+        _agrees(file, f"line {number}", header[where], unit, scale)
+    return _rising(file, [(k, c[where] if where < len(c) else "") for k, c in rows], unit, scale)
+
+
+def _rising(
+    file: str, entries: list[tuple[int, str]], unit: str, scale: float
+) -> tuple[float, ...]:
+    """Return the entries as times in ms, when they rise by 0.1 ms or more."""
     times: list[float] = []
-    for line, cells in rows:
-        place, text = f"line {line}", cells[where] if where < len(cells) else ""
+    for line, text in entries:
+        place = f"line {line}"
         value = _number(file, place, text) * scale
         if value < 0:
             raise DataError(file, place, text, "a spike time must be 0 or later")
@@ -84,6 +107,14 @@ def _rows(path: Path) -> list[tuple[int, list[str]]]:
     ]
 
 
+def _agrees(file: str, place: str, header: str, unit: str, scale: float) -> None:
+    """Refuse a header whose unit is not the declared one."""
+    found = _ENDS_IN_A_UNIT.fullmatch(header)
+    told = (found["unit"] or found["alone"]) if found else ""
+    if told in UNITS and not math.isclose(UNITS[told], scale):
+        raise DataError(file, place, header, f"says {told}, but the unit given is {unit!r}")
+
+
 def _column(
     file: str, rows: list[tuple[int, list[str]]], column: str | None
 ) -> tuple[int, list[tuple[int, list[str]]]]:
@@ -100,7 +131,7 @@ def _column(
             file,
             f"line {number}",
             ", ".join(first),
-            f"has {len(first)} columns; name one with column = '...' (decimals need a point)",
+            f"has {len(first)} columns; say which `column` holds the times (decimals need a point)",
         )
     return 0, rows if _is_number(first[0]) else rows[1:]
 

@@ -8,7 +8,7 @@ from typing import Any
 
 from pydantic import Field, PrivateAttr, field_validator, model_validator
 
-from plastic.errors import DataError
+from plastic.errors import DataError, UnknownName
 from plastic.protocols._interface import Induction, Named, Protocol, Repeat
 from plastic.protocols._recorded import read_times
 from plastic.protocols._schedule import INJECTED
@@ -48,10 +48,15 @@ class SpikeTimes(Protocol):
     def model_post_init(self, context: Any) -> None:
         """Read the files, relative to ``base`` of the validation context."""
         base = Path((context or {}).get("base", "."))
-        self._recorded = {
-            name: read_times(base / file, unit=self.unit, column=self.column)
-            for name, file in self.files.items()
-        }
+        self._recorded = {name: self._read(name, base / file) for name, file in self.files.items()}
+
+    def _read(self, name: str, path: Path) -> tuple[float, ...]:
+        """Return the times of one file; what is wrong with it is said at its key."""
+        try:
+            return read_times(path, unit=self.unit, column=self.column)
+        except (DataError, UnknownName) as error:
+            told = str(error).removeprefix(f"{path.name}: ")
+            raise refusal(told, path=("files", name), value=self.files[name]) from None
 
     @model_validator(mode="after")
     def _fits_into_its_repeat(self) -> SpikeTimes:
@@ -59,11 +64,11 @@ class SpikeTimes(Protocol):
             return self
         for name, times in self._recorded.items():
             if times[-1] >= self.repeat.every:
-                raise DataError(
-                    self.files[name],
-                    "last time",
-                    f"{times[-1]:g} ms",
-                    f"must come before the next repeat, after {self.repeat.every:g} ms",
+                raise refusal(
+                    f"the last time, {times[-1]:g} ms, must come before the next repeat, after "
+                    f"{self.repeat.every:g} ms",
+                    path=("files", name),
+                    value=self.files[name],
                 )
         return self
 

@@ -12,6 +12,7 @@ from pathlib import Path
 import xarray as xr
 
 from plastic.report.arms import Arm, Outcome, arm_of
+from plastic.report.counts import simulated
 from plastic.report.flags import meanings
 from plastic.report.grid import Grid
 from plastic.report.matrices import (
@@ -51,6 +52,8 @@ class Comparison:
         All words that a verdict and a cause of "never" can take.
     notes : tuple of str
         What the comparison could not tell, in sentences.
+    short : str
+        Inputs whose baseline EPSP could not be recruited, with the number of cells.
     """
 
     title: str
@@ -69,6 +72,7 @@ class Comparison:
     verdicts: tuple[str, ...] = ()
     causes: tuple[str, ...] = ()
     notes: tuple[str, ...] = ()
+    short: str = ""
 
     def arm(self, rule: str, route: str, protocol: str) -> Arm:
         """Return the arm with these labels; KeyError when there is none."""
@@ -105,9 +109,14 @@ class Comparison:
         """Title, criterion, number of simulated cells, matching and ceiling, in a few lines."""
         ceiling = _CEILINGS.get(self.at_ceiling, self.at_ceiling)
         told = (
-            f"criterion: {self.criterion}; {self.cells} simulated cells per arm\n"
+            f"criterion: {self.criterion}; {simulated(self.cells)} per arm\n"
             f"routes matched by {self.match.replace('_', ' ')}; at a route's ceiling {ceiling}"
         )
+        if self.short:
+            told += (
+                f"\nbaseline EPSP not met: {self.short} (all sites that may be recruited are not "
+                "enough, or the EPSP saturates below it); such cells start where they could"
+            )
         return f"{self.title}\n{told}" if self.title else told
 
     def __str__(self) -> str:
@@ -164,6 +173,7 @@ def compare(dataset: xr.Dataset) -> Comparison:
         verdicts=tuple(meanings(dataset["verdict"]).values()),
         causes=tuple(meanings(dataset["never_cause"]).values()),
         notes=() if study else (_LOST,),
+        short=str(dataset.attrs.get("baseline_epsp_not_recruited", "")),
     )
 
 

@@ -9,6 +9,11 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 
+def simulated(cells: int) -> str:
+    """Return a number of simulated cells in words; they are never called n."""
+    return f"{cells} simulated cell{'' if cells == 1 else 's'}"
+
+
 @dataclass(frozen=True)
 class Counts:
     """Median and quartiles of a count; infinite means "beyond the protocol".

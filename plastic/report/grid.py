@@ -5,7 +5,7 @@ from __future__ import annotations
 import csv
 import io
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 #: signs that mark a cell of a table, each explained in a note under it
 EXTRAPOLATED = "†"
@@ -52,6 +52,23 @@ class Grid:
         lines = lines if self.headed else lines[2:]
         text = [line.rstrip() for line in lines]
         return "\n".join([*([self.title] if self.title else []), *text, *self.notes])
+
+    def shortened(self, most: int, kept: str) -> Grid:
+        """Return the table with its first and last rows only, and how many are left out.
+
+        Parameters
+        ----------
+        most : int
+            Rows that are shown; a table of no more stays as it is.
+        kept : str
+            Where the whole table is, said under it.
+        """
+        if len(self.rows) <= most:
+            return self
+        half = most // 2
+        gap = [f"... {len(self.rows) - 2 * half} more", *[""] * (len(self.columns) - 1)]
+        rows = [*self.rows[:half], gap, *self.rows[-half:]]
+        return replace(self, rows=rows, notes=[*self.notes, kept])
 
     def csv(self) -> str:
         """Return the table as comma-separated text, without title and notes."""

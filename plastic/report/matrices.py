@@ -7,9 +7,14 @@ import string
 from collections.abc import Mapping, Sequence
 
 from plastic.report.arms import ALREADY, Arm
+from plastic.report.counts import simulated
 from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE, Grid
-from plastic.report.pathways import Pathway
+from plastic.report.pathways import FIXED, Pathway
 
+#: before a cause in a footnote: the cells that never get there need not share it
+COMMONEST = "commonest cause:"
+#: % of baseline; quartiles nearer to 100 than this print as unchanged
+UNCHANGED = 0.5
 #: by the change a rig can measure at that time, and by the one that has been induced
 KINDS = ("expressed", "induced")
 
@@ -53,12 +58,11 @@ def matrix_grid(
     limit = max((arm.expressed.repeats.limit for arm in arms if arm.expressed), default=0)
     title = f"{arms[0].protocol}: repeats to criterion, {kind} ({limit} repeats)"
     notes = [
-        f"median (quartiles) and share of {arms[0].cells} simulated cells that reach it, "
-        f"{MEANS[kind]}"
+        f"median (quartiles) and share of {simulated(arms[0].cells)} that reach it, {MEANS[kind]}"
     ]
     if any(arm.expressed and ALREADY in arm.expressed.verdicts for arm in arms):
         notes.append(f"cells {ALREADY} are left out of the counts, not of the shares")
-    notes += [f"[{letter}] {cause}" for cause, letter in letters.items()]
+    notes += [f"[{letter}] {COMMONEST} {cause}" for cause, letter in letters.items()]
     notes += extrapolation_notes(arms, doses)
     notes += [f"{ILLUSTRATIVE} {r}: illustrative here: {illustrative[r]}" for r in rules
               if r in illustrative]  # fmt: skip
@@ -84,7 +88,7 @@ def verdict_grid(arms: Sequence[Arm]) -> Grid:
         if arm.expressed is not None and arm.induced is not None
     ]  # fmt: skip
     columns = ["rule", "route", "verdicts, expressed", "verdicts, induced", "why never"]
-    note = f"shares of {arms[0].cells} simulated cells"
+    note = f"shares of {simulated(arms[0].cells)}"
     return Grid(f"{arms[0].protocol}: what became of the cells", columns, rows, [note])
 
 
@@ -127,21 +131,34 @@ def controls_grid(arms: Sequence[Arm], pathways: Sequence[Pathway], name: str) -
 
 
 def pathway_grid(pathways: Sequence[Pathway], name: str) -> Grid:
-    """Return input specificity: each learning input beside the one the criterion is about."""
+    """Return input specificity: each input that is read beside the one the criterion is about.
+
+    Inputs that do not learn and stay as they are, are counted under the table.
+    """
     inputs = _ordered(p.input for p in pathways)
     if len(inputs) < 2:
         return Grid("Input specificity", ["rule"], [])
     inputs.sort(key=lambda label: label != name)
     of = {(p.protocol, p.rule, p.route, p.input): p for p in pathways if not p.control}
     arms = _ordered(key[:3] for key in of)
+    shown = [of[(*arm, label)] for arm in arms for label in inputs]
     rows = [
-        [*arm, label, of[(*arm, label)].role, epsp_text(of[(*arm, label)])]
-        for arm in arms
-        for label in inputs
+        [p.protocol, p.rule, p.route, p.input, p.role, epsp_text(p)] for p in shown if not _idle(p)
     ]
     columns = ["protocol", "rule", "route", "input", "pathway", "EPSP, % of baseline"]
-    note = "at the last reading, median (quartiles) over simulated cells"
-    return Grid("Input specificity: paired and control pathways", columns, rows, [note])
+    notes = ["at the last reading, median (quartiles) over simulated cells"]
+    for label in inputs:
+        idle = sum(_idle(p) for p in shown if p.input == label)
+        if idle:
+            notes.append(f"{label} {FIXED} and stays at 100 (100 to 100) in {idle} of {len(arms)} "
+                         "arms, not shown")  # fmt: skip
+    return Grid("Input specificity: paired and control pathways", columns, rows, notes)
+
+
+def _idle(pathway: Pathway) -> bool:
+    """Return whether a pathway does not learn and reads as unchanged."""
+    quartiles = (pathway.percent, pathway.low, pathway.high)
+    return pathway.role == FIXED and all(abs(value - 100) < UNCHANGED for value in quartiles)
 
 
 def epsp_text(pathway: Pathway) -> str:

@@ -8,6 +8,7 @@ from typing import Any
 
 from plastic.catalogue import Catalogue
 from plastic.errors import UnknownName
+from plastic.laws import Law
 from plastic.measures import Measure
 from plastic.parameters import Parametrised
 from plastic.protocols import Protocol
@@ -18,7 +19,7 @@ from plastic.rules._interface import Rule
 #: the catalogues by the name of their room
 ROOMS: Mapping[str, Catalogue[Any]] = {
     room: Catalogue(f"plastic.{room}", room.removesuffix("s"))
-    for room in ("rules", "routes", "protocols", "measures")
+    for room in ("rules", "routes", "protocols", "measures", "laws")
 }
 
 
@@ -28,7 +29,7 @@ def catalogue_grid(room: str) -> Grid:
     Parameters
     ----------
     room : str
-        "rules", "routes", "protocols" or "measures".
+        "rules", "routes", "protocols", "measures" or "laws".
     """
     catalogue = ROOMS[room]
     found = {name: catalogue.find(name) for name in catalogue.names()}
@@ -36,6 +37,7 @@ def catalogue_grid(room: str) -> Grid:
     columns = {
         "rules": ["rule", "sets", "measured at"],
         "routes": ["route", "evidence"],
+        "laws": ["law", "about"],
     }.get(room, [room.removesuffix("s")])
     return Grid(room, [*columns, "what it is"], rows)
 
@@ -51,7 +53,7 @@ def show_grids(name: str) -> list[Grid]:
     found = [(room, c.find(name)) for room, c in ROOMS.items() if name in c.names()]
     if not found:
         everything = [label for catalogue in ROOMS.values() for label in catalogue.names()]
-        raise UnknownName("rule, route, protocol or measure", name, everything)
+        raise UnknownName("rule, route, protocol, measure or law", name, everything)
     return [grid for room, part in found for grid in _shown(room, name, part)]
 
 
@@ -63,6 +65,8 @@ def summary(part: Any) -> str:
 def _traits(part: Any) -> list[str]:
     if inspect.isclass(part) and issubclass(part, Rule):
         return [", ".join(part.sets) or "-", f"{part.dose} repeats" if part.dose else "-"]
+    if inspect.isclass(part) and issubclass(part, Law):
+        return [part.about]
     return [part.evidence] if inspect.isclass(part) and issubclass(part, Route) else []
 
 
@@ -89,6 +93,8 @@ def _facts(part: Any) -> list[list[str]]:
             ("spread over cells", ", ".join(part.amplitudes)),
             ("illustrative", part.illustrative),
             ("in silence", part.in_silence),
+            ("claims", "; ".join(claim.words for claim in part.claims)),
+            ("exempt from laws", "; ".join(f"{k}: {v}" for k, v in part.exempt.items())),
         ]
     if inspect.isclass(part) and issubclass(part, Route):
         facts += [

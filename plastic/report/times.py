@@ -10,9 +10,14 @@ from plastic.protocols import Schedule
 from plastic.report.figures.picture import file_name
 from plastic.report.grid import Grid
 
+#: most rows of a printed protocol; a recording has thousands
+SHOWN = 16
+
 
 def protocol_grid(schedule: Schedule, notes: Sequence[str] = ()) -> Grid:
     """Return one repeat of a protocol, with its set lags; the title tells the epochs.
+
+    Of a long repeat, the first and last events; `write_times` writes all.
 
     Parameters
     ----------
@@ -47,7 +52,8 @@ def protocol_grid(schedule: Schedule, notes: Sequence[str] = ()) -> Grid:
     tests = [f"{name} {len(times)}" for name, times in schedule.test_times.items() if len(times)]
     told += [f"test pulses: {', '.join(tests)}"] if tests else []
     columns = ["time in the repeat (ms)", "event of", "set lags (ms)"]
-    return Grid(title, columns, rows, [*told, *notes])
+    kept = f"{len(rows)} events in a repeat; the protocol's CSV file has them all"
+    return Grid(title, columns, rows, [*told, *notes]).shortened(SHOWN, kept)
 
 
 def write_times(schedules: Mapping[str, Schedule], folder: Path) -> list[Path]:

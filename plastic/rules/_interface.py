@@ -18,12 +18,12 @@
 
 4.  Hooks pick their arguments *by name* from the variables and from the givens
     ``t`` (ms), ``dt`` (ms, in ``flow`` and ``cell_flow``), ``pre_rate`` and ``post_rate`` (Hz, in
-    presentation hooks), ``amplitude`` (of the local spike, 1 at the soma; in ``on_post``), and
+    presentation hooks), ``amplitude`` (of the local spike, 1 at the soma; in ``at_post``), and
     return *named changes*: ``return {"w": -self.a_minus * o1}``.
 
-    ``on_pre``, ``on_post``, ``on_presentation``
+    ``at_pre``, ``at_post``, ``at_presentation``
         once per input concerned; may change variables of input scope.
-    ``cell_on_post``, ``cell_on_presentation``
+    ``cell_at_post``, ``cell_at_presentation``
         once per cell; may change states of cell scope.
     ``flow(dt, ...)``, ``cell_flow(dt, ...)``
         the exact change over an interval of length ``dt`` without events; sees variables of its
@@ -58,7 +58,7 @@ from __future__ import annotations
 
 import inspect
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import Any, ClassVar, Literal
 
 from plastic.errors import RuleError
@@ -71,11 +71,11 @@ Jump = Literal["add", "set"]
 
 #: hook name -> givens it may ask for besides the rule's variables
 HOOKS: Mapping[str, tuple[str, ...]] = {
-    "on_pre": ("t",),
-    "on_post": ("t", "amplitude"),
-    "on_presentation": ("t", "pre_rate", "post_rate"),
-    "cell_on_post": ("t",),
-    "cell_on_presentation": ("t", "post_rate"),
+    "at_pre": ("t",),
+    "at_post": ("t", "amplitude"),
+    "at_presentation": ("t", "pre_rate", "post_rate"),
+    "cell_at_post": ("t",),
+    "cell_at_presentation": ("t", "post_rate"),
     "flow": ("dt",),
     "cell_flow": ("dt",),
 }
@@ -116,7 +116,7 @@ class Claim:
 
     Each of `times` pairings, `rate` of them a second, has `pre` presynaptic spikes and `post` of
     the cell, `apart` ms from each other; `lag` ms lie between the first of each (positive: pre
-    first). `chosen` is a published set, by default none.
+    first). `chosen` is a published set, by default none, and `given` are other parameters.
     """
 
     words: str
@@ -129,6 +129,7 @@ class Claim:
     post: int = 1
     apart: float = 10.0
     chosen: str = ""
+    given: Mapping[str, float] = field(default_factory=dict)
 
 
 def weight(start: float | str, *, low: float | str, high: float | str) -> Any:
@@ -225,7 +226,7 @@ def _check_declarations(cls: type[Rule]) -> None:
     if not cls.weights:
         raise RuleError(f"{owner}: a rule needs at least one weight")
     for name in vars(cls):
-        if (name.startswith(("on_", "cell_")) or name == "flow") and name not in HOOKS:
+        if (name.startswith(("at_", "on_", "cell_")) or name == "flow") and name not in HOOKS:
             raise RuleError(f"{owner}.{name}: no such hook; known hooks are {', '.join(HOOKS)}")
     hooks = cls.hooks()
     if not hooks:
@@ -254,8 +255,12 @@ def _check_declarations(cls: type[Rule]) -> None:
     for value in numbers:
         if isinstance(value, str) and value not in cls.parameters:
             raise RuleError(f"{owner}: {value!r} is no parameter of the rule")
-    for name in cls.amplitudes:
-        if name not in cls.parameters:
-            raise RuleError(f"{owner}: amplitude {name!r} is no parameter of the rule")
+    for kind, names in (("amplitude", cls.amplitudes), ("rate power", cls.rate_powers)):
+        for name in names:
+            if name not in cls.parameters:
+                raise RuleError(f"{owner}: {kind} {name!r} is no parameter of the rule")
+    for law, reason in cls.exempt.items():
+        if not reason.strip():
+            raise RuleError(f"{owner}: the exemption from {law!r} needs a reason")
     if cls.reads == "rates" and "window" not in cls.parameters:
         raise RuleError(f"{owner}: a rule that reads rates needs the parameter 'window' (ms)")

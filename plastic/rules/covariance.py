@@ -84,6 +84,41 @@ class Covariance(Rule):
         Claim("pairings at 1 Hz potentiate by 29 %, whatever the order", 0.28, 0.3, lag=-10),
         Claim("an active input of a silent cell is depressed", -0.04, -0.03, post=0),
         Claim("so is a silent input of an active cell", -0.04, -0.03, pre=0),
+        Claim(
+            "one window of 10 and 30 Hz: eta (x - x_mean)(y - y_mean)",
+            0.0169600,
+            0.0169700,
+            times=1,
+            post=3,
+        ),
+        Claim(
+            "with half of each average",
+            0.0183965,
+            0.0184065,
+            times=1,
+            post=3,
+            given={"centre_x": 0.5, "centre_y": 0.2},
+        ),
+        Claim(
+            "two windows, 2 s apart: the averages have risen and come back by 1.9 s",
+            0.0334109,
+            0.0334209,
+            times=2,
+            rate=0.5,
+            post=3,
+            given={"tau_mean": 1000},
+        ),
+        Claim(
+            "and so with other averages in silence",
+            0.0214134,
+            0.0214234,
+            times=2,
+            rate=0.5,
+            post=3,
+            given={"tau_mean": 1000, "x_rest": 4, "y_rest": 2},
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"eta": 1}),
+        Claim("strong depression ends at w_min", -1.0, -1.0, pre=0, given={"eta": 1}),
     )
     rate_powers = {"eta": -2}
 
@@ -91,7 +126,7 @@ class Covariance(Rule):
     x_mean = state("x_rest")
     y_mean = state("y_rest", scope="cell")
 
-    def on_presentation(
+    def at_presentation(
         self, pre_rate: float, post_rate: float, x_mean: float, y_mean: float
     ) -> Changes:
         """Change by the product of the two departures; move the input's average (exact)."""
@@ -100,7 +135,7 @@ class Covariance(Rule):
         moved = -math.expm1(-self.window / self.tau_mean)
         return {"w": self.eta * x * y, "x_mean": (self.x_rest + pre_rate - x_mean) * moved}
 
-    def cell_on_presentation(self, post_rate: float, y_mean: float) -> Changes:
+    def cell_at_presentation(self, post_rate: float, y_mean: float) -> Changes:
         """Move the cell's average over the window at the rate held in it (exact)."""
         moved = -math.expm1(-self.window / self.tau_mean)
         return {"y_mean": (self.y_rest + post_rate - y_mean) * moved}

@@ -47,16 +47,29 @@ class InhibitoryBalance(Rule):
         Claim(
             "an input of a silent cell weakens by eta alpha with each spike", -0.061, -0.059, post=0
         ),
+        Claim("one pair: eta (exp(-1/2) - 1/5)", 0.0020277, 0.0020377, times=1),
+        Claim(
+            "with rho_0 = 20 Hz the depression is four times as large",
+            -0.0040050,
+            -0.0039950,
+            times=1,
+            post=0,
+            given={"rho_0": 20},
+        ),
+        Claim("all pairs count, on both sides", 0.0028671, 0.0028771, lag=20, pre=2, times=1),
+        Claim("post post pre: both post count", 0.0038671, 0.0038771, lag=-20, post=2, times=1),
+        Claim("strong strengthening ends at w_max", 9.0, 9.0, given={"eta": 1, "rho_0": 0}),
+        Claim("strong weakening ends at 0", -1.0, -1.0, post=0, given={"eta": 1, "rho_0": 100}),
     )
 
     w = weight(1.0, low=0.0, high="w_max")
     r = trace("pre", tau="tau")
     o = trace("post", tau="tau")
 
-    def on_pre(self, o: float) -> Changes:
+    def at_pre(self, o: float) -> Changes:
         """Grow by what is left of postsynaptic spikes, less what the target rate would leave."""
         return {"w": self.eta * (o - 2e-3 * self.rho_0 * self.tau)}
 
-    def on_post(self, r: float) -> Changes:
+    def at_post(self, r: float) -> Changes:
         """Grow by what is left of presynaptic spikes."""
         return {"w": self.eta * r}

@@ -71,6 +71,64 @@ class NearestTripletTiming(Rule):
         Claim("slow pairings the other way round depress by a third", -0.37, -0.34, lag=-10),
         Claim("at 50 Hz they potentiate by two thirds", 0.6, 0.67, rate=50),
         Claim("at 50 Hz they do so in either order", 0.6, 0.67, lag=-10, rate=50),
+        Claim(
+            "pre post post: two pairs and a triplet",
+            0.006167,
+            0.006177,
+            lag=10,
+            post=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "pre post post post: earlier post do not add",
+            0.008172,
+            0.008182,
+            lag=10,
+            post=3,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "post pre pre: two pairs and a triplet",
+            -0.009321,
+            -0.009311,
+            lag=-10,
+            pre=2,
+            times=1,
+            chosen="hippocampal_full",
+            given={"a3_minus": 0.01},
+        ),
+        Claim(
+            "post pre pre pre: earlier pre do not add",
+            -0.014587,
+            -0.014577,
+            lag=-10,
+            pre=3,
+            times=1,
+            chosen="hippocampal_full",
+            given={"a3_minus": 0.01},
+        ),
+        Claim(
+            "pre pre post: the last counts",
+            0.002532,
+            0.002542,
+            lag=20,
+            pre=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "post post pre: the last counts",
+            -0.002235,
+            -0.002225,
+            lag=-20,
+            post=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"a2_plus": 1}),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"a2_minus": 1}),
     )
     promises = ("both_sides",)
 
@@ -80,10 +138,10 @@ class NearestTripletTiming(Rule):
     o1 = trace("post", tau="tau_minus", jump="set")
     o2 = trace("post", tau="tau_y", jump="set")
 
-    def on_pre(self, o1: float, r2: float) -> Changes:
+    def at_pre(self, o1: float, r2: float) -> Changes:
         """Depress by the last postsynaptic spike, more after another presynaptic one."""
         return {"w": -o1 * (self.a2_minus + self.a3_minus * r2)}
 
-    def on_post(self, r1: float, o2: float) -> Changes:
+    def at_post(self, r1: float, o2: float) -> Changes:
         """Potentiate by the last presynaptic spike, more after another postsynaptic one."""
         return {"w": r1 * (self.a2_plus + self.a3_plus * o2)}

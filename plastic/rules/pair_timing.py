@@ -69,8 +69,29 @@ class PairTiming(Rule):
     dose = 60
     amplitudes = ("a_plus", "a_minus")
     claims = (
-        Claim("60 pairings 10 ms apart at 1 Hz, presynaptic first, potentiate by 42 %", 0.41, 0.44),
-        Claim("the other way round they depress by 20 %", -0.21, -0.19, lag=-10),
+        Claim("60 pairings at 1 Hz and +10 ms potentiate by 43 %", 0.42, 0.435),
+        Claim("at -10 ms they depress by 20 %", -0.21, -0.195, lag=-10),
+        Claim("pre pre post: both pre count", 0.011074, 0.011084, lag=20, pre=2, times=1),
+        Claim("post post pre: both post count", -0.005900, -0.005890, lag=-20, post=2, times=1),
+        Claim("pre post post: both post count", 0.011074, 0.011084, lag=10, post=2, times=1),
+        Claim("post pre pre: both pre count", -0.005900, -0.005890, lag=-10, pre=2, times=1),
+        Claim(
+            "mu = 1/4, w = w_max / 4: (3/4)^(1/4) of the potentiation",
+            0.006640,
+            0.006650,
+            times=1,
+            given={"mu": 0.25, "w_max": 4},
+        ),
+        Claim(
+            "and (1/4)^(1/4) of the depression",
+            -0.002396,
+            -0.002386,
+            times=1,
+            lag=-10,
+            given={"mu": 0.25, "w_max": 4},
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"a_plus": 1}),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"a_minus": 1}),
     )
     promises = ("both_sides",)
 
@@ -78,13 +99,13 @@ class PairTiming(Rule):
     r1 = trace("pre", tau="tau_plus")
     o1 = trace("post", tau="tau_minus")
 
-    def on_pre(self, o1: float, w: float) -> Changes:
+    def at_pre(self, o1: float, w: float) -> Changes:
         """Depress by what is left of earlier postsynaptic spikes."""
         # a power costs more than the rest of the hook
         share = (w / self.w_max) ** self.mu if self.mu > 0 else 1.0
         return {"w": -self.a_minus * share * o1}
 
-    def on_post(self, r1: float, w: float) -> Changes:
+    def at_post(self, r1: float, w: float) -> Changes:
         """Potentiate by what is left of earlier presynaptic spikes."""
         share = (1 - w / self.w_max) ** self.mu if self.mu > 0 else 1.0
         return {"w": self.a_plus * share * r1}

@@ -47,8 +47,41 @@ class PowerLawTiming(Rule):
     dose = 60
     amplitudes = ("lambda_",)
     claims = (
-        Claim("60 pairings 10 ms apart at 1 Hz, presynaptic first, potentiate by 43 %", 0.42, 0.44),
+        Claim("60 pairings at 1 Hz and +10 ms potentiate by 43 %", 0.42, 0.44),
         Claim("the other way round they depress by a third", -0.34, -0.32, lag=-10),
+        Claim("one pair potentiates by the power 0.4 of the weight", 0.0066667, 0.0066767, times=1),
+        Claim("and depresses in proportion to it", -0.0066768, -0.0066668, times=1, lag=-10),
+        Claim(
+            "twice the unit of weight, 2^0.6 times the potentiation",
+            0.0101074,
+            0.0101174,
+            times=1,
+            given={"w_0": 2},
+        ),
+        Claim(
+            "with another power and other time constants it potentiates accordingly",
+            0.0027009,
+            0.0027109,
+            times=1,
+            given={"mu": 0.2, "tau_plus": 15},
+        ),
+        Claim(
+            "and depresses accordingly",
+            -0.0082713,
+            -0.0082613,
+            times=1,
+            lag=-10,
+            given={"mu": 0.2, "tau_minus": 35},
+        ),
+        Claim("pre pre post: both pre count", 0.0107133, 0.0107233, lag=20, pre=2, times=1),
+        Claim("post post pre: both post count", -0.0107235, -0.0107135, lag=-20, post=2, times=1),
+        Claim(
+            "strong potentiation ends at w_max",
+            24.252525251525253,
+            24.252525253525253,
+            given={"lambda_": 100},
+        ),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"lambda_": 80}),
     )
     promises = ("both_sides",)
 
@@ -56,10 +89,10 @@ class PowerLawTiming(Rule):
     r1 = trace("pre", tau="tau_plus")
     o1 = trace("post", tau="tau_minus")
 
-    def on_pre(self, o1: float, w: float) -> Changes:
+    def at_pre(self, o1: float, w: float) -> Changes:
         """Depress in proportion to the weight by what is left of earlier postsynaptic spikes."""
         return {"w": -self.lambda_ * self.alpha * w * o1}
 
-    def on_post(self, r1: float, w: float) -> Changes:
+    def at_post(self, r1: float, w: float) -> Changes:
         """Potentiate as a power of the weight by what is left of earlier presynaptic spikes."""
         return {"w": self.lambda_ * self.w_0 ** (1 - self.mu) * w**self.mu * r1}

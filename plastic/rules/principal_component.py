@@ -64,11 +64,24 @@ class PrincipalComponent(Rule):
         ),
         Claim("a silent input of an active cell decays", -0.07, -0.05, pre=0),
         Claim("an active input of a silent cell stays", 0.0, 0.0, post=0),
+        Claim(
+            "one window of 10 and 30 Hz: eta y (x - alpha y w)",
+            0.0209950,
+            0.0210050,
+            times=1,
+            post=3,
+        ),
+        Claim("alpha sets the decay", 0.0119950, 0.0120050, times=1, post=3, given={"alpha": 0.2}),
+        Claim(
+            "two windows: the decay grows with the weight", 0.0418060, 0.0418160, times=2, post=3
+        ),
+        Claim("strong growth ends at w_max", 9.0, 9.0, times=1, given={"eta": 1, "alpha": 0}),
+        Claim("strong decay ends at w_min", -1.0, -1.0, times=1, pre=0, given={"eta": 1}),
     )
     rate_powers = {"eta": -2}
 
     w = weight(1.0, low="w_min", high="w_max")
 
-    def on_presentation(self, pre_rate: float, post_rate: float, w: float) -> Changes:
+    def at_presentation(self, pre_rate: float, post_rate: float, w: float) -> Changes:
         """Grow with both rates, decay with the square of the cell's."""
         return {"w": self.eta * post_rate * (pre_rate - self.alpha * post_rate * w)}

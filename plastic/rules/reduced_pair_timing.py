@@ -55,8 +55,60 @@ class ReducedPairTiming(Rule):
     dose = 60
     amplitudes = ("a_plus", "a_minus")
     claims = (
-        Claim("60 pairings 10 ms apart at 1 Hz, presynaptic first, potentiate by 42 %", 0.41, 0.44),
-        Claim("the other way round they depress by 20 %", -0.21, -0.19, lag=-10),
+        Claim("60 pairings at 1 Hz and +10 ms potentiate by 43 %", 0.42, 0.435),
+        Claim("at -10 ms they depress by 20 %", -0.21, -0.195, lag=-10),
+        Claim("pre pre post: only the last pre counts", 0.007136, 0.007146, lag=20, pre=2, times=1),
+        Claim(
+            "post post pre: only the last post counts",
+            -0.003387,
+            -0.003377,
+            lag=-20,
+            post=2,
+            times=1,
+        ),
+        Claim(
+            "pre post post: only the first post counts", 0.007136, 0.007146, lag=10, post=2, times=1
+        ),
+        Claim(
+            "post pre pre: only the first pre counts", -0.003387, -0.003377, lag=-10, pre=2, times=1
+        ),
+        Claim(
+            "bursts of the cell around one pre: its neighbours count",
+            -0.001698,
+            -0.001688,
+            lag=-10,
+            post=4,
+            apart=3,
+            rate=50,
+            times=2,
+        ),
+        Claim(
+            "bursts of pre around one post: its neighbours count",
+            0.021017,
+            0.021027,
+            lag=10,
+            pre=4,
+            apart=3,
+            rate=50,
+            times=2,
+        ),
+        Claim(
+            "mu = 1/4, w = w_max / 4: (3/4)^(1/4) of the potentiation",
+            0.006640,
+            0.006650,
+            times=1,
+            given={"mu": 0.25, "w_max": 4},
+        ),
+        Claim(
+            "and (1/4)^(1/4) of the depression",
+            -0.002396,
+            -0.002386,
+            times=1,
+            lag=-10,
+            given={"mu": 0.25, "w_max": 4},
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"a_plus": 1}),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"a_minus": 1}),
     )
     promises = ("both_sides",)
 
@@ -66,14 +118,14 @@ class ReducedPairTiming(Rule):
     o1 = trace("post", tau="tau_minus", jump="set")
     r_minus = trace("pre", tau="tau_minus", jump="set")
 
-    def on_pre(self, o1: float, r_minus: float, w: float) -> Changes:
+    def at_pre(self, o1: float, r_minus: float, w: float) -> Changes:
         """Depress by the last postsynaptic spike, if no presynaptic one came after it."""
         if o1 < r_minus:
             return {"w": 0.0}
         share = (w / self.w_max) ** self.mu if self.mu > 0 else 1.0
         return {"w": -self.a_minus * share * o1}
 
-    def on_post(self, r1: float, o_plus: float, w: float) -> Changes:
+    def at_post(self, r1: float, o_plus: float, w: float) -> Changes:
         """Potentiate by the last presynaptic spike, if no postsynaptic one came after it."""
         if r1 < o_plus:
             return {"w": 0.0}

@@ -70,6 +70,26 @@ class SlidingThreshold(Rule):
             rate=0.1,
             post=3,
         ),
+        Claim(
+            "one window of 10 and 30 Hz: eta x y (y - theta)", 0.0161950, 0.0162050, times=1, post=3
+        ),
+        Claim(
+            "two windows, 2 s apart: the threshold has risen and come back by 1.9 s",
+            0.0151574,
+            0.0151674,
+            times=2,
+            rate=0.5,
+            post=3,
+            given={"tau_theta": 1000, "theta_rest": 20},
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, post=5, given={"eta": 1}),
+        Claim(
+            "strong depression ends at w_min",
+            -1.0,
+            -1.0,
+            times=3,
+            given={"eta": 1, "theta_rest": 100},
+        ),
     )
     promises = ("both_sides",)
     rate_powers = {"eta": -3}
@@ -77,11 +97,11 @@ class SlidingThreshold(Rule):
     w = weight(1.0, low="w_min", high="w_max")
     theta = state("theta_rest", scope="cell")
 
-    def on_presentation(self, pre_rate: float, post_rate: float, theta: float) -> Changes:
+    def at_presentation(self, pre_rate: float, post_rate: float, theta: float) -> Changes:
         """Change in proportion to the presynaptic rate, with the sign of y - theta."""
         return {"w": self.eta * pre_rate * post_rate * (post_rate - theta)}
 
-    def cell_on_presentation(self, post_rate: float, theta: float) -> Changes:
+    def cell_at_presentation(self, post_rate: float, theta: float) -> Changes:
         """Move the threshold over the window at the rate held in it (exact)."""
         goal = self.theta_rest + post_rate * post_rate / self.y_0
         return {"theta": (goal - theta) * -math.expm1(-self.window / self.tau_theta)}

@@ -43,10 +43,40 @@ class SuppressionTiming(Rule):
     dose = 60
     amplitudes = ("a_plus", "a_minus")
     claims = (
-        Claim("60 pairings 10 ms apart at 1 Hz, presynaptic first, potentiate by half", 0.47, 0.5),
+        Claim("60 pairings at 1 Hz and +10 ms potentiate by half", 0.47, 0.5),
         Claim("the other way round they depress by two fifths", -0.4, -0.36, lag=-10),
         Claim("further spikes of the cell, 10 ms apart, add little", 0.5, 0.54, rate=0.1, post=3),
         Claim("at 50 Hz hardly anything is left", -0.05, 0.05, rate=50),
+        Claim(
+            "two spikes of the cell: the second counts by 1 - exp(-10/88)",
+            0.0084986,
+            0.0085086,
+            lag=10,
+            post=2,
+            times=1,
+        ),
+        Claim(
+            "three of each side: every pair by both efficacies",
+            0.0097875,
+            0.0097975,
+            lag=5,
+            pre=3,
+            post=3,
+            apart=7.0,
+            times=1,
+        ),
+        Claim(
+            "and the other way round",
+            -0.0080739,
+            -0.0080639,
+            lag=-5,
+            pre=3,
+            post=3,
+            apart=7.0,
+            times=1,
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"a_plus": 1}),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"a_minus": 1}),
     )
     promises = ("both_sides",)
 
@@ -58,12 +88,12 @@ class SuppressionTiming(Rule):
     s_pre = trace("pre", tau="tau_s_pre", jump="set")
     s_post = trace("post", tau="tau_s_post", jump="set")
 
-    def on_pre(self, r: float, x: float, o: float, y: float, s_pre: float) -> Changes:
+    def at_pre(self, r: float, x: float, o: float, y: float, s_pre: float) -> Changes:
         """Depress by earlier postsynaptic spikes; enter the presynaptic sum with this efficacy."""
         efficacy = 1 - s_pre
         return {"w": -self.a_minus * efficacy * o * y, "r": r * x + efficacy - r}
 
-    def on_post(self, r: float, x: float, o: float, y: float, s_post: float) -> Changes:
+    def at_post(self, r: float, x: float, o: float, y: float, s_post: float) -> Changes:
         """Potentiate by earlier presynaptic spikes; enter the postsynaptic sum likewise."""
         efficacy = 1 - s_post
         return {"w": self.a_plus * efficacy * r * x, "o": o * y + efficacy - o}

@@ -58,6 +58,33 @@ class SynapticScaling(Rule):
             post=0,
         ),
         Claim("ten minutes of 30 Hz weaken by 0.4 %", -0.0045, -0.0035, rate=30, times=18_000),
+        Claim(
+            "silence of 1000 s: exp of beta times what is missing and gamma times its sum",
+            1.4595981,
+            1.4596081,
+            times=2,
+            rate=0.001,
+            post=0,
+            chosen="van_rossum",
+        ),
+        Claim(
+            "a spike of the cell is forgotten within 100 s",
+            3.4772076,
+            3.4772116,
+            times=2,
+            rate=0.01,
+            lag=0,
+            given={"beta": 0.001, "gamma": 1e-05, "w_max": 100},
+        ),
+        Claim(
+            "strong activity ends near 0",
+            -1.0,
+            -0.99,
+            rate=30,
+            times=300,
+            given={"beta": 0.1, "tau": 1000},
+        ),
+        Claim("long silence ends at w_max", 9.0, 9.0, times=2, rate=1e-6, post=0),
     )
     promises = ("half_weights",)
 
@@ -65,7 +92,7 @@ class SynapticScaling(Rule):
     a = state(0.0)
     missed = state(0.0)
 
-    def on_post(self) -> Changes:
+    def at_post(self) -> Changes:
         """Count a spike of the cell."""
         return {"a": 1000.0 / self.tau}
 
@@ -75,5 +102,6 @@ class SynapticScaling(Rule):
         gone = -math.expm1(-s / tau_s)
         short = self.a_goal * s - a * tau_s * gone
         summed = missed * s + self.a_goal * s * s / 2.0 - a * tau_s * (s - tau_s * gone)
-        grown = min(self.beta * short + self.gamma * summed, 700.0)  # the bound is far below e^700
+        # w_max is far below e^600, and w e^600 is still a number
+        grown = min(self.beta * short + self.gamma * summed, 600.0)
         return {"w": w * math.expm1(grown), "a": -a * gone, "missed": short}

@@ -69,6 +69,64 @@ class TripletTiming(Rule):
         Claim("at 20 Hz, presynaptic first, they potentiate by a quarter", 0.2, 0.26, rate=20),
         Claim("at 50 Hz they potentiate by three quarters", 0.7, 0.8, rate=50),
         Claim("at 50 Hz they do so in either order", 0.7, 0.8, lag=-10, rate=50),
+        Claim(
+            "pre post post: two pairs and a triplet",
+            0.006620,
+            0.006630,
+            lag=10,
+            post=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "pre post post post: earlier post add",
+            0.008954,
+            0.008964,
+            lag=10,
+            post=3,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "post pre pre: two pairs and a triplet",
+            -0.007544,
+            -0.007534,
+            lag=-10,
+            pre=2,
+            times=1,
+            chosen="hippocampal_full",
+            given={"a3_minus": 0.01},
+        ),
+        Claim(
+            "post pre pre pre: earlier pre add",
+            -0.016283,
+            -0.016273,
+            lag=-10,
+            pre=3,
+            times=1,
+            chosen="hippocampal_full",
+            given={"a3_minus": 0.01},
+        ),
+        Claim(
+            "pre pre post: both count",
+            0.005214,
+            0.005224,
+            lag=20,
+            pre=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim(
+            "post post pre: both count",
+            -0.002078,
+            -0.002068,
+            lag=-20,
+            post=2,
+            times=1,
+            chosen="hippocampal_full",
+        ),
+        Claim("strong potentiation ends at w_max", 9.0, 9.0, given={"a2_plus": 1}),
+        Claim("strong depression ends at 0", -1.0, -1.0, lag=-10, given={"a2_minus": 1}),
     )
     promises = ("both_sides",)
 
@@ -78,10 +136,10 @@ class TripletTiming(Rule):
     o1 = trace("post", tau="tau_minus")
     o2 = trace("post", tau="tau_y")
 
-    def on_pre(self, o1: float, r2: float) -> Changes:
+    def at_pre(self, o1: float, r2: float) -> Changes:
         """Depress by earlier postsynaptic spikes, more after another presynaptic one."""
         return {"w": -o1 * (self.a2_minus + self.a3_minus * r2)}
 
-    def on_post(self, r1: float, o2: float) -> Changes:
+    def at_post(self, r1: float, o2: float) -> Changes:
         """Potentiate by earlier presynaptic spikes, more after another postsynaptic one."""
         return {"w": r1 * (self.a2_plus + self.a3_plus * o2)}

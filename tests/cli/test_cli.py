@@ -63,6 +63,22 @@ def test_misuse_leaves_with_2_and_says_how_to_use_it(words, capsys):
     assert said.out == ""
 
 
+@pytest.mark.parametrize(
+    ("words", "said"),
+    [
+        (
+            ["list", "rule"],
+            "'rule'; did you mean 'rules'? (rules, routes, protocols, measures, laws)",
+        ),
+        (["runn"], "'runn'; did you mean 'run'? (run, cell, "),
+        (["foo"], "'foo' (run, cell, "),
+    ],
+)
+def test_a_word_that_is_not_known_is_answered_with_the_nearest(words, said, capsys):
+    assert main(words) == 2
+    assert f"unknown: {said}" in capsys.readouterr().err
+
+
 def test_an_error_of_ours_is_one_line_and_2(monkeypatch, capsys):
     monkeypatch.setattr(show, "run", raising(StoreError("made by\nanother study")))
     assert main(["show", "x"]) == 2

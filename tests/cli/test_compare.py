@@ -20,6 +20,14 @@ def test_compare_prints_every_table_and_writes_what_is_asked_for(tmp_path, monke
     assert (tmp_path / "arms.csv").read_text().startswith("rule,route,protocol,")
 
 
+def test_a_file_that_is_there_is_refused_before_anything_is_read(tmp_path, capsys):
+    (tmp_path / "mine.csv").write_text("dear to me")
+    assert main(["compare", str(tmp_path), "--csv", str(tmp_path / "mine.csv")]) == 2
+    (line,) = capsys.readouterr().err.splitlines()
+    assert "mine.csv is there already; give --csv another name" in line
+    assert (tmp_path / "mine.csv").read_text() == "dear to me"
+
+
 def test_figures_are_drawn_again_where_they_are_asked_for(tmp_path, monkeypatch):
     drawn = []
     monkeypatch.setattr(plastic, "load", lambda path: fake_dataset(), raising=False)

@@ -19,7 +19,58 @@ def test_the_final_change_is_the_closed_form_of_two_pairs(files, capsys):
     text = capsys.readouterr().out
     # two pairs of +10 ms, 10 s apart: 2 a_plus exp(-10/16.8)
     assert f"final change: {200 * 0.01 * math.exp(-10 / 16.8):+.6g} % of the baseline" in text
-    assert "2 presynaptic spikes, 2 spikes of the cell" in text
+    assert "% after 2 presynaptic and 2 postsynaptic spikes" in text
+
+
+def test_the_result_is_one_sentence(tmp_path, capsys):
+    """Sixty pairs of +10 ms, ten seconds apart: 60 a_plus exp(-10/16.8), in whole percent."""
+    for name, late in (("pre", 0), ("post", 10)):
+        (tmp_path / name).write_text("\n".join(str(10_000 * k + late) for k in range(60)))
+    words = ["--pre", str(tmp_path / "pre"), "--post", str(tmp_path / "post")]
+    assert main(["impose", "pair_timing", *words]) == 0
+    told = f"{6000 * 0.777 / 60 * math.exp(-10 / 16.8):+.0f} %"
+    assert told == "+43 %"
+    text = capsys.readouterr().out
+    assert f"\n{told} after 60 presynaptic and 60 postsynaptic spikes\n" in text
+
+
+@pytest.mark.parametrize(("unit", "span", "rate"), [("ms", 0.59, "100"), ("s", 590, "0.1")])
+def test_each_train_is_told_on_top_so_that_a_wrong_unit_shows(tmp_path, capsys, unit, span, rate):
+    """Sixty spikes ten units apart span 59 intervals."""
+    (tmp_path / "pre").write_text("\n".join(str(10 * k) for k in range(60)))
+    (tmp_path / "post").write_text("5\n")
+    words = ["--pre", str(tmp_path / "pre"), "--post", str(tmp_path / "post"), "--unit", unit]
+    assert main(["impose", "pair_timing", *words]) == 0
+    first, second = capsys.readouterr().out.splitlines()[:2]
+    assert first == (
+        f"presynaptic, pre: 60 spikes from 0 to {span:g} s, mean rate {rate} Hz; "
+        f"times read in {unit}"
+    )
+    alone = {"ms": "0.005", "s": "5"}[unit]
+    assert second == f"postsynaptic, post: 1 spike at {alone} s; times read in {unit}"
+
+
+def test_a_column_is_chosen_by_name_in_both_files(files, tmp_path, capsys):
+    main(["impose", "pair_timing", *files])
+    expected = capsys.readouterr().out
+    (tmp_path / "pre.csv").write_text("sweep,spike\n1,0\n1,10000\n")
+    (tmp_path / "post.csv").write_text("spike;note\n10;a\n10010;b\n")
+    assert main(["impose", "pair_timing", *files, "--column", "spike"]) == 0
+    assert capsys.readouterr().out == expected
+    assert main(["impose", "pair_timing", *files]) == 2
+    assert "say which `column` holds the times" in capsys.readouterr().err
+
+
+@pytest.mark.parametrize("name", ["pre.csv", "post.csv", "other.csv", "gone/new.csv"])
+def test_an_output_that_is_there_is_refused_and_stays(files, tmp_path, capsys, name):
+    (tmp_path / "other.csv").write_text("dear to me")
+    before = {p.name: p.read_bytes() for p in tmp_path.iterdir()}
+    assert main(["impose", "pair_timing", *files, "--out", str(tmp_path / name)]) == 2
+    said = capsys.readouterr()
+    assert said.out == ""
+    (line,) = said.err.splitlines()
+    assert name in line
+    assert {p.name: p.read_bytes() for p in tmp_path.iterdir()} == before
 
 
 def test_every_event_is_written_with_the_factor_just_after_it(files, tmp_path, capsys):

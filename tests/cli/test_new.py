@@ -1,3 +1,5 @@
+import pytest
+
 from plastic.cli import main
 from plastic.study.file import load_study
 
@@ -25,6 +27,22 @@ def test_nothing_is_ever_overwritten(tmp_path, monkeypatch, capsys):
     )  # fmt: skip
 
 
-def test_a_folder_that_is_not_there_is_named(tmp_path, capsys):
-    assert main(["new", str(tmp_path / "no" / "study")]) == 2
-    assert "study.toml: No such file or directory" in capsys.readouterr().err
+def test_a_folder_that_is_not_there_is_named(tmp_path, monkeypatch, capsys):
+    monkeypatch.chdir(tmp_path)
+    assert main(["new", "sub/x"]) == 2
+    assert capsys.readouterr().err == (
+        "plastic: sub/x.toml: there is no folder sub; make it first\n"
+    )  # fmt: skip
+    (tmp_path / "sub").mkdir()
+    assert main(["new", "sub/x"]) == 0
+    assert (tmp_path / "sub" / "x.toml").exists()
+
+
+@pytest.mark.parametrize("name", ["", " ", ".", "..", ".toml", "/", "sub/"])
+def test_what_is_no_name_is_refused_and_nothing_is_written(name, tmp_path, monkeypatch, capsys):
+    monkeypatch.chdir(tmp_path)
+    assert main(["new", name]) == 2
+    assert capsys.readouterr().err == (
+        f"plastic: {name!r} is no name; write one such as: plastic new first\n"
+    )
+    assert list(tmp_path.iterdir()) == []

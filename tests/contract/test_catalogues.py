@@ -44,7 +44,7 @@ class LatePairs(Rule):
     w = weight(1.0, low=0.0, high=10.0)
     r = trace("pre", tau="tau", jump="set")
 
-    def on_post(self, r: float) -> Changes:
+    def at_post(self, r: float) -> Changes:
         """Potentiate."""
         return {"w": self.step * r}
 '''

@@ -22,13 +22,13 @@ class Mirror(Rule):
     o = trace("post", tau=40.0)
     last = trace("pre", tau="tau", jump="set")
 
-    def on_pre(self, o: float) -> Changes:
+    def at_pre(self, o: float) -> Changes:
         return {"w": -o}
 
-    def on_post(self, r: float, amplitude: float) -> Changes:
+    def at_post(self, r: float, amplitude: float) -> Changes:
         return {"w": amplitude * r}
 
-    def cell_on_post(self, o: float) -> Changes:
+    def cell_at_post(self, o: float) -> Changes:
         return {"heard": 1.0 + o}
 
 
@@ -41,13 +41,13 @@ class Compound(Rule):
     w = weight(1.0, low=0.0, high=1.2)
     mood = state(2.0, scope="cell")
 
-    def on_pre(self, w: float, mood: float) -> Changes:
+    def at_pre(self, w: float, mood: float) -> Changes:
         return {"w": self.down * w * mood}
 
-    def on_post(self, w: float) -> Changes:
+    def at_post(self, w: float) -> Changes:
         return {"w": self.up * w}
 
-    def cell_on_post(self, mood: float) -> Changes:
+    def cell_at_post(self, mood: float) -> Changes:
         return {"mood": mood}
 
 
@@ -60,7 +60,7 @@ class Leaky(Rule):
     mood = state(0.0, scope="cell")
     seen = state(0.0)
 
-    def on_pre(self, w: float) -> Changes:
+    def at_pre(self, w: float) -> Changes:
         return {"seen": w}
 
     def flow(self, dt: float, w: float) -> Changes:
@@ -94,10 +94,10 @@ class Counting(Rule):
     level = state(0.0, scope="cell")
     silence = state(0.0)
 
-    def on_presentation(self, pre_rate: float, post_rate: float, level: float) -> Changes:
+    def at_presentation(self, pre_rate: float, post_rate: float, level: float) -> Changes:
         return {"w": pre_rate, "both": pre_rate * post_rate + level}
 
-    def cell_on_presentation(self, post_rate: float) -> Changes:
+    def cell_at_presentation(self, post_rate: float) -> Changes:
         return {"level": post_rate}
 
     def flow(self, dt: float) -> Changes:
@@ -126,7 +126,7 @@ class Everything(Rule):
     o = trace("post", tau=31.0)
     o_last = trace("post", tau="slow", jump="set")
 
-    def on_pre(self, o: float, r_last: float, w: float, theta: float, t: float) -> Changes:
+    def at_pre(self, o: float, r_last: float, w: float, theta: float, t: float) -> Changes:
         shift = self.down * o * min(theta, 4.0)
         if r_last > 0.9:
             return {"w": -shift * w, "seen": 1}
@@ -134,13 +134,13 @@ class Everything(Rule):
             return {"u": math.sin(t) * self.down}
         return {"w": -0.5 * shift, "u": self.down * r_last}
 
-    def on_post(self, r: float, o_last: float, amplitude: float, seen: float) -> Changes:
+    def at_post(self, r: float, o_last: float, amplitude: float, seen: float) -> Changes:
         change = 0.0
         for _ in range(2):
             change += self.up * r * amplitude / (1.0 + 0.01 * seen)
         return {"u": change * (1.0 - o_last), "w": change}
 
-    def cell_on_post(self, o: float, o_last: float, theta: float) -> Changes:
+    def cell_at_post(self, o: float, o_last: float, theta: float) -> Changes:
         if o_last == 0.0:
             return {}
         return {"theta": self.up * (theta + o)}
@@ -166,7 +166,7 @@ class OnlyPost(Rule):
     w = weight(1, low=0.0, high=3.0)
     o = trace("post", tau=25.0)
 
-    def on_post(self, o: float, t: float) -> Changes:
+    def at_post(self, o: float, t: float) -> Changes:
         if t > 30.0:
             return {"w": self.gain * (0.5 - o)}
         if o > 0.9:
@@ -182,7 +182,7 @@ class OnlyPre(Rule):
     w = weight("start", low=0.0, high=3.0)
     r = trace("pre", tau=25.0)
 
-    def on_pre(self, *, r: float) -> Changes:
+    def at_pre(self, *, r: float) -> Changes:
         return {"w": self.gain * (1.0 - r)}
 
 
@@ -198,12 +198,12 @@ class Rated(Rule):
     idle = state(0.0)
     theta = state(10.0, scope="cell")
 
-    def on_presentation(
+    def at_presentation(
         self, pre_rate: float, post_rate: float, theta: float, w: float, t: float
     ) -> Changes:
         return {"w": self.eta * w * pre_rate * (post_rate - theta), "idle": 1e-6 * t}
 
-    def cell_on_presentation(self, post_rate: float, theta: float) -> Changes:
+    def cell_at_presentation(self, post_rate: float, theta: float) -> Changes:
         return {"theta": (post_rate - theta) * -math.expm1(-self.window / self.tau)}
 
     def flow(self, dt: float, w: float) -> Changes:

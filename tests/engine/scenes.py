@@ -71,13 +71,13 @@ class Forgetful(Rule):
     r = trace("pre", tau="tau_r", jump="set")
     o = trace("post", tau="tau_o", jump="set")
 
-    def on_pre(self, o: float, r: float) -> Changes:
+    def at_pre(self, o: float, r: float) -> Changes:
         return {"v": -self.loss * o, "seen": 1.0 - r}
 
-    def on_post(self, r: float, amplitude: float, mood: float) -> Changes:
+    def at_post(self, r: float, amplitude: float, mood: float) -> Changes:
         return {"w": self.gain * r * amplitude * mood, "v": self.gain * r * amplitude}
 
-    def cell_on_post(self, o: float, mood: float) -> Changes:
+    def cell_at_post(self, o: float, mood: float) -> Changes:
         return {"mood": -0.2 * mood * o}
 
     def flow(self, dt: float, w: float) -> Changes:

@@ -90,12 +90,12 @@ class Endless(Rule):
 
     w = weight(1.0, low=-math.inf, high=math.inf)
 
-    def on_pre(self, w: float) -> Changes:
+    def at_pre(self, w: float) -> Changes:
         return {"w": w * self.size * self.size * 0.0 + self.size * 1e200 - self.size * 1e200}
 
 
 def test_a_change_that_is_no_number_is_an_error_in_both_loops() -> None:
-    with pytest.raises(RuleError, match=r"Endless\.on_pre changed w by nan at 1 ms"):
+    with pytest.raises(RuleError, match=r"Endless\.at_pre changed w by nan at 1 ms"):
         impose(Endless(), [1.0], [], compiled=False)
     with pytest.raises(RuleError, match="Endless: a change is no number; compiled=False says"):
         impose(Endless(), [1.0], [])

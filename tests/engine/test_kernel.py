@@ -100,23 +100,23 @@ class Bad:
 @pytest.mark.parametrize(
     ("hook", "function", "said"),
     [
-        ("on_pre", Bad.uses_a_constant, "it uses the global name 'SCALE'; a hook may use its arg"),
-        ("on_pre", Bad.uses_a_function, "it uses the global name 'doubled'"),
-        ("on_pre", Bad.uses_a_builtin, "it uses the built-in 'sum'"),
-        ("on_pre", Bad.remembers, r"self\.memory is no parameter; parameters are a, t$"),
-        ("on_pre", Bad.calls_itself, r"self\.helper is no parameter"),
-        ("on_pre", Bad.sets_a_parameter, r"\['a'\] name both a parameter and an argument or a"),
-        ("on_pre", Bad.shadows_a_parameter, r"\['a'\] name both a parameter and"),
-        ("on_pre", Bad.asks_for_a_parameter, r"\['t'\] name both a parameter and"),
-        ("on_pre", Bad.changes_the_unknown, "changes 'v'; it may change w, seen$"),
-        ("on_pre", Bad.changes_the_cell, "changes 'theta'; it may change w, seen$"),
-        ("on_pre", Bad.changes_a_trace, "changes 'o'; it may change w, seen$"),
-        ("cell_on_post", Bad.changes_an_input, "changes 'w'; it may change theta$"),
-        ("on_pre", Bad.returns_a_number, 'return named changes, like {"w": ...}'),
-        ("on_pre", Bad.returns_early, 'return named changes, like {"w": ...}'),
-        ("cell_on_post", Bad.returns_a_number, 'return named changes, like {"theta": ...}'),
-        ("on_pre", Bad.changes_nothing, "it changes nothing; leave the hook out"),
-        ("on_pre", lambda self, o: {"w": o}, "write it as a method, with def"),
+        ("at_pre", Bad.uses_a_constant, "it uses the global name 'SCALE'; a hook may use its arg"),
+        ("at_pre", Bad.uses_a_function, "it uses the global name 'doubled'"),
+        ("at_pre", Bad.uses_a_builtin, "it uses the built-in 'sum'"),
+        ("at_pre", Bad.remembers, r"self\.memory is no parameter; parameters are a, t$"),
+        ("at_pre", Bad.calls_itself, r"self\.helper is no parameter"),
+        ("at_pre", Bad.sets_a_parameter, r"\['a'\] name both a parameter and an argument or a"),
+        ("at_pre", Bad.shadows_a_parameter, r"\['a'\] name both a parameter and"),
+        ("at_pre", Bad.asks_for_a_parameter, r"\['t'\] name both a parameter and"),
+        ("at_pre", Bad.changes_the_unknown, "changes 'v'; it may change w, seen$"),
+        ("at_pre", Bad.changes_the_cell, "changes 'theta'; it may change w, seen$"),
+        ("at_pre", Bad.changes_a_trace, "changes 'o'; it may change w, seen$"),
+        ("cell_at_post", Bad.changes_an_input, "changes 'w'; it may change theta$"),
+        ("at_pre", Bad.returns_a_number, 'return named changes, like {"w": ...}'),
+        ("at_pre", Bad.returns_early, 'return named changes, like {"w": ...}'),
+        ("cell_at_post", Bad.returns_a_number, 'return named changes, like {"theta": ...}'),
+        ("at_pre", Bad.changes_nothing, "it changes nothing; leave the hook out"),
+        ("at_pre", lambda self, o: {"w": o}, "write it as a method, with def"),
     ],
     ids=lambda x: getattr(x, "__name__", None) if callable(x) else None,
 )
@@ -133,25 +133,25 @@ def test_a_cell_hook_without_a_state_of_the_cell_may_change_nothing() -> None:
         (Bad.returns_a_number, "a state of cell scope"),
     ):
         with pytest.raises(RuleError, match=said):
-            text_for(declared(theta=None, cell_on_post=function))
+            text_for(declared(theta=None, cell_at_post=function))
 
 
 def test_a_factor_reads_weights_and_nothing_global() -> None:
     with pytest.raises(RuleError, match=r"Wrong\.factor: it uses the global name 'SCALE'"):
-        text_for(declared(on_pre=Bad.changes_an_input, factor=Bad.is_short))
+        text_for(declared(at_pre=Bad.changes_an_input, factor=Bad.is_short))
 
 
 def test_a_hook_without_a_source_is_refused() -> None:
     space: dict[str, Any] = {}
-    exec("def on_pre(self, o):\n    return {'w': o}", space)
-    with pytest.raises(RuleError, match=r"Wrong\.on_pre: its source cannot be read"):
-        text_for(declared(on_pre=space["on_pre"]))
+    exec("def at_pre(self, o):\n    return {'w': o}", space)
+    with pytest.raises(RuleError, match=r"Wrong\.at_pre: its source cannot be read"):
+        text_for(declared(at_pre=space["at_pre"]))
 
 
 def test_the_plain_rule_of_these_tests_is_not_refused() -> None:
     """The control of all refusals."""
-    text = text_for(declared(on_pre=Bad.changes_an_input))
-    assert "def on_pre(o, a, t):\n    return (o,)" in text
+    text = text_for(declared(at_pre=Bad.changes_an_input))
+    assert "def at_pre(o, a, t):\n    return (o,)" in text
 
 
 # ---- compiled and plain are one

@@ -209,13 +209,13 @@ def test_a_change_that_is_no_number_says_where_and_with_what(value: float) -> No
         w = weight(1.0, low=0.0, high=2.0)
         o = trace("post", tau=20.0)
 
-        def on_pre(self, o: float) -> Changes:
+        def at_pre(self, o: float) -> Changes:
             return {"w": o * value}
 
     learner = Learner(Broken(), 1)
     learner.instant(0.0, post={0: 1.0})
     with pytest.raises(
-        RuleError, match=rf"Broken\.on_pre changed w by {value} at 20 ms .*'o': 0\.3"
+        RuleError, match=rf"Broken\.at_pre changed w by {value} at 20 ms .*'o': 0\.3"
     ):
         learner.instant(20.0, [0])
 
@@ -228,12 +228,12 @@ def test_mathematics_that_fails_says_where_and_with_what(o: float) -> None:
         w = weight(1.0, low=0.0, high=2.0)
         o = trace("post", tau=20.0)
 
-        def on_pre(self, o: float) -> Changes:
+        def at_pre(self, o: float) -> Changes:
             return {"w": math.log(1 - o) * math.exp(1.0 / o)}
 
     learner = Learner(Careless(), 1)
     learner.traces["o"][0] = o
-    with pytest.raises(RuleError, match=rf"^Careless\.on_pre: .+ at 0 ms with .*'o': {o}"):
+    with pytest.raises(RuleError, match=rf"^Careless\.at_pre: .+ at 0 ms with .*'o': {o}"):
         learner.instant(0.0, [0])
 
 
@@ -244,7 +244,7 @@ def test_a_hook_that_returns_nothing_changes_nothing() -> None:
         w = weight(1.0, low=0.0, high=2.0)
         o = trace("post", tau=20.0)
 
-        def on_pre(self, o: float) -> Changes:
+        def at_pre(self, o: float) -> Changes:
             if o > 0:
                 return {"w": o}
             return None  # type: ignore[return-value]
@@ -270,7 +270,7 @@ def test_the_factor_is_what_the_rule_says_of_its_weights() -> None:
         v = weight(4.0, low=0.0, high=9.0)
         u = state(3.0)
 
-        def on_pre(self) -> Changes:
+        def at_pre(self) -> Changes:
             return {"w": 1.0, "v": 2.0, "u": 1.0}
 
         def factor(self, w: float, v: float) -> float:

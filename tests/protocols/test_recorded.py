@@ -77,6 +77,29 @@ def test_what_is_no_list_of_spike_times_is_refused(
         assert part in str(caught.value)
 
 
+HEADERS = ["time_s", "time (s)", "t [s]", "time/s", "spike time s", "sec", "t_seconds"]
+
+
+@pytest.mark.parametrize("header", HEADERS)
+def test_a_header_with_another_unit_is_refused(tmp_path: Path, header: str) -> None:
+    path = saved(tmp_path, f"{header}\n1\n2\n")
+    assert read_times(path, unit="s") == (1000, 2000)
+    with pytest.raises(DataError, match=r"far\.csv: line 1 = .*says s\w*, but .* is 'ms'"):
+        read_times(path, unit="ms")
+
+
+@pytest.mark.parametrize("header", ["time", "spikes", "cell_m", "far", "axon_s1", "times (of far)"])
+def test_a_header_without_a_unit_of_time_says_nothing(tmp_path: Path, header: str) -> None:
+    assert read_times(saved(tmp_path, f"{header}\n1\n2\n"), unit="ms") == (1, 2)
+
+
+def test_the_header_of_the_chosen_column_counts(tmp_path: Path) -> None:
+    path = saved(tmp_path, "start_s,spike_ms\n1,0.5\n1,7\n")
+    assert read_times(path, unit="ms", column="spike_ms") == (0.5, 7)
+    with pytest.raises(DataError, match="says s,"):
+        read_times(path, unit="ms", column="start_s")
+
+
 def test_a_file_that_is_not_there_is_named(tmp_path: Path) -> None:
     with pytest.raises(DataError, match=r"gone\.csv: cannot be read: no such file"):
         read_times(tmp_path / "gone.csv", unit="ms")

@@ -9,7 +9,6 @@ import numpy as np
 import pytest
 from pydantic import ValidationError
 
-from plastic.errors import DataError
 from plastic.protocols.spike_times import SpikeTimes
 
 
@@ -47,7 +46,7 @@ def test_a_recording_may_be_replayed(tmp_path: Path) -> None:
 
 
 def test_a_replay_must_fit_into_its_repeat(tmp_path: Path) -> None:
-    with pytest.raises(DataError, match=r"far\.csv: last time = '1250 ms': .*after 1000 ms"):
+    with pytest.raises(ValidationError, match=r"the last time, 1250 ms, must .*after 1000 ms"):
         recorded(tmp_path, repeat={"times": 3, "every": "1 s"})
 
 

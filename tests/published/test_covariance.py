@@ -37,7 +37,7 @@ def field(rule: Covariance, weights: np.ndarray) -> np.ndarray:
     for rates, p in zip(PATTERNS, CHANCE, strict=True):
         given = {"post_rate": float(weights @ rates), "y_mean": float(weights @ x_mean)}
         total += [
-            p * rule.on_presentation(float(x), x_mean=float(m), **given)["w"]
+            p * rule.at_presentation(float(x), x_mean=float(m), **given)["w"]
             for x, m in zip(rates, x_mean, strict=True)
         ]
     return total / rule.eta
@@ -105,10 +105,10 @@ def drift(rule: Covariance, correlation: float, seed: int) -> tuple[float, float
     for k in range(BURN_IN + PRESENTATIONS):
         a, b = draw.normal(size=(2, LEARNERS))
         x, y = 5 + 2 * a, 8 + 3 * (correlation * a + math.sqrt(1 - correlation**2) * b)
-        change = rule.on_presentation(x, y, x_mean=x_mean, y_mean=y_mean)  # type: ignore[arg-type]
+        change = rule.at_presentation(x, y, x_mean=x_mean, y_mean=y_mean)  # type: ignore[arg-type]
         total += change["w"] * (k >= BURN_IN)
         x_mean = x_mean + change["x_mean"]
-        y_mean = y_mean + rule.cell_on_presentation(y, y_mean)["y_mean"]  # type: ignore[arg-type]
+        y_mean = y_mean + rule.cell_at_presentation(y, y_mean)["y_mean"]  # type: ignore[arg-type]
     return mean_and_error(total / (PRESENTATIONS * rule.eta))
 
 

@@ -28,7 +28,7 @@ def field(weights: np.ndarray) -> np.ndarray:
     for rates in PATTERNS:
         y = float(weights @ rates)
         total += [
-            OJA.on_presentation(float(x), y, float(w))["w"]
+            OJA.at_presentation(float(x), y, float(w))["w"]
             for x, w in zip(rates, weights, strict=True)
         ]
     return total / (len(PATTERNS) * OJA.eta)
@@ -79,7 +79,7 @@ def test_constant_steps_leave_the_derived_misalignment() -> None:
     for _ in range(2000):
         x = draw.standard_normal(size=(3, LEARNERS)) * spread
         y = (w * x).sum(axis=0)
-        w += rule.on_presentation(x, y, w)["w"]  # type: ignore[arg-type]
+        w += rule.at_presentation(x, y, w)["w"]  # type: ignore[arg-type]
     squares = w[1:] ** 2
     mean, error = squares.mean(axis=1), squares.std(axis=1, ddof=1) / math.sqrt(LEARNERS)
     derived = ETA * LAMBDAS[0] * LAMBDAS[1:] / (2 * (LAMBDAS[0] - LAMBDAS[1:]))

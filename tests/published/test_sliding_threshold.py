@@ -26,8 +26,8 @@ def field(
     total = np.zeros(len(weights) + 1)
     for x, p in zip(patterns, chance, strict=True):
         y = float(weights @ x)
-        total[:-1] += [p * rule.on_presentation(float(rate), y, theta)["w"] for rate in x]
-        total[-1] += p * rule.cell_on_presentation(y, theta)["theta"]
+        total[:-1] += [p * rule.at_presentation(float(rate), y, theta)["w"] for rate in x]
+        total[-1] += p * rule.cell_at_presentation(y, theta)["theta"]
     return total
 
 

@@ -35,7 +35,7 @@ def field(rule: SynapticScaling, w: float, a: float, missed: float, gain: float)
     gain w (Hz); the flow is differentiated over a millisecond either side."""
     ahead, behind = (rule.flow(dt, w, a, missed) for dt in (1.0, -1.0))
     slope = np.array([ahead[name] - behind[name] for name in ("w", "a", "missed")]) / 2e-3
-    slope[1] += gain * w * rule.on_post()["a"]
+    slope[1] += gain * w * rule.at_post()["a"]
     return slope
 
 
@@ -97,7 +97,7 @@ def logistic(t: np.ndarray, start: float, rule: SynapticScaling, gain: float) ->
 def test_a_linear_cell_follows_the_logistic(start: float) -> None:
     """A fast sensor; integrated to 1e-10. What is left is of the order of beta a tau = 4e-6."""
     rule, gain, at = SynapticScaling(beta=4e-4, tau=1, a_goal=10), 8.0, np.linspace(0, 2000, 9)
-    rate = rule.on_post()["a"]
+    rate = rule.at_post()["a"]
 
     def slope(_: float, y: np.ndarray) -> list[float]:
         w, a = y

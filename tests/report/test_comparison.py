@@ -55,6 +55,12 @@ def test_the_head_tells_criterion_matching_and_ceiling(comparison, fake_results)
     assert "the weight goes on, unseen" in hidden.head
 
 
+def test_the_head_tells_where_the_baseline_epsp_could_not_be_met(fake_results):
+    assert "baseline EPSP" not in compare(fake_results).head
+    short = fake_results.assign_attrs(baseline_epsp_not_recruited="far: 4 cells")
+    assert "\nbaseline EPSP not met: far: 4 cells (" in compare(short).head
+
+
 def test_csv_has_every_arm_in_full_precision(comparison, tmp_path):
     written = comparison.to_csv(tmp_path / "arms.csv")
     assert (tmp_path / "arms.csv").read_text(encoding="utf-8") == written

@@ -5,7 +5,7 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
-from plastic.report.counts import Counts, counts_of, quantile
+from plastic.report.counts import Counts, counts_of, quantile, simulated
 
 COUNTS = st.lists(st.integers(0, 60).map(float), min_size=1, max_size=30)
 
@@ -42,3 +42,8 @@ def test_no_cell_at_all_is_no_count():
     assert math.isnan(none.median)
     assert none.shown(none.median) == "-"
     assert isinstance(none, Counts)
+
+
+@pytest.mark.parametrize(("cells", "told"), [(1, "1 simulated cell"), (12, "12 simulated cells")])
+def test_one_simulated_cell_is_not_several(cells, told):
+    assert simulated(cells) == told

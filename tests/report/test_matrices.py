@@ -4,6 +4,8 @@ import numpy as np
 import pytest
 
 from plastic.report.comparison import compare
+from plastic.report.matrices import pathway_grid
+from plastic.report.pathways import FIXED, PAIRED, TESTED_ONLY, Pathway
 from tests.report.conftest import CONTROLS, changed
 
 
@@ -51,6 +53,34 @@ def test_every_cause_in_the_matrix_has_its_letter_below(text):
     told = set(re.findall(r"^\[([a-z])\] ", matrix, re.MULTILINE))
     assert used <= told
     assert len(used) >= 2
+
+
+def test_a_cause_is_told_as_the_commonest_only(text):
+    causes = [li for li in text.splitlines() if re.match(r"\[[a-z]\] ", li)]
+    assert len(causes) > 2
+    assert all(li[4:].startswith("commonest cause: ") for li in causes)
+
+
+def pathway(name, role, low):
+    arm = ("pair_timing", "quantal_size", "bursts", "")
+    return Pathway(*arm, name, role, 100.0, low, 100.2, 0.0, 0.0)
+
+
+@pytest.mark.parametrize(
+    ("name", "role", "low", "shown"),
+    [
+        ("far", PAIRED, 99.8, True),
+        ("side", TESTED_ONLY, 99.8, True),
+        ("near", FIXED, 99.8, False),
+        ("near", FIXED, 99.3, True),
+    ],
+    ids=["paired", "control pathway", "idle", "changed by the dendrite"],
+)
+def test_only_what_does_not_learn_and_does_not_change_is_folded_away(name, role, low, shown):
+    grid = pathway_grid([pathway(name, role, low), pathway("other", PAIRED, 99.0)], "far")
+    assert (name in [row[3] for row in grid.rows]) is shown
+    folded = "near does not learn and stays at 100 (100 to 100) in 1 of 1 arms, not shown"
+    assert (folded in grid.notes) is not shown
 
 
 def test_the_realised_lag_is_told_with_its_reference_points(text):

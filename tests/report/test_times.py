@@ -1,7 +1,9 @@
 import csv
 
+import numpy as np
 import pytest
 
+from plastic.protocols._schedule import build
 from plastic.report.times import protocol_grid, write_times
 from plastic.study.file import parse_study
 from tests.report.conftest import PROTOCOLS, STUDY
@@ -25,6 +27,28 @@ def test_one_repeat_is_shown_with_its_set_lags(schedules):
     assert "presynaptic spike to presynaptic spike of near" in grid.notes[0]
     assert grid.notes[1].startswith("test pulses: far ")
     assert grid.notes[-1] == "controls: unpaired"
+
+
+def recorded(count):
+    """A recording of an invented study, one event every 500 ms."""
+    times = {"far": np.arange(0.0, 500.0 * count, 500.0)}
+    return build("recorded", times, times=1, every=500.0 * count, baseline=0.0, follow_up=0.0,
+                 test_times={}, partner=())  # fmt: skip
+
+
+@pytest.mark.parametrize("count", [16, 1000])
+def test_a_recording_does_not_flood_the_terminal(count):
+    """The control: sixteen events are all shown."""
+    rows = protocol_grid(recorded(count)).rows
+    first, last = [row[0] for row in rows[:8]], [row[0] for row in rows[-8:]]
+    assert first == [f"{500 * k:g}" for k in range(8)]
+    assert last == [f"{500 * k:g}" for k in range(count - 8, count)]
+    assert [row[0] for row in rows[8:-8]] == (["... 984 more"] if count == 1000 else [])
+
+
+def test_a_shortened_protocol_says_how_many_events_there_are_and_where():
+    note = protocol_grid(recorded(1000)).notes[-1]
+    assert note == "1000 events in a repeat; the protocol's CSV file has them all"
 
 
 def test_reversed_order_shows_the_mirrored_lags(schedules):

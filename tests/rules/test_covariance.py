@@ -17,7 +17,7 @@ FORMS = {"both": (1.0, 1.0), "active_inputs": (0.0, 1.0), "active_cell": (1.0, 0
 
 def change(rule: Covariance, x: float, y: float) -> float:
     """Return the change of a weight at rates x and y, both of which average 4 Hz."""
-    return rule.on_presentation(x, y, x_mean=4.0, y_mean=4.0)["w"]
+    return rule.at_presentation(x, y, x_mean=4.0, y_mean=4.0)["w"]
 
 
 def on_spikes(
@@ -53,8 +53,8 @@ def test_a_set_is_the_form_it_is_named_after(form: str) -> None:
 
 def test_the_averages_go_to_rest_plus_the_rate() -> None:
     rule = Covariance(window=10, tau_mean=1, x_rest=3, y_rest=5)
-    x = 7.0 + rule.on_presentation(20.0, 40.0, x_mean=7.0, y_mean=9.0)["x_mean"]
-    y = 9.0 + rule.cell_on_presentation(40.0, y_mean=9.0)["y_mean"]
+    x = 7.0 + rule.at_presentation(20.0, 40.0, x_mean=7.0, y_mean=9.0)["x_mean"]
+    y = 9.0 + rule.cell_at_presentation(40.0, y_mean=9.0)["y_mean"]
     assert x == pytest.approx(23 - 16 * math.exp(-10), rel=1e-12)
     assert y == pytest.approx(45 - 36 * math.exp(-10), rel=1e-12)
 
@@ -110,7 +110,7 @@ def test_joint_silence_opens_no_window_and_teaches_nothing() -> None:
     """On patterns it does: both rates are below their averages, and the weight grows."""
     found = on_spikes(Covariance(), [0.0], BURST, readings=[200, BASELINE])
     assert found["w"][0] == found["w"][1] != 1.0
-    assert Covariance().on_presentation(0.0, 0.0, x_mean=1.0, y_mean=1.0)["w"] > 0
+    assert Covariance().at_presentation(0.0, 0.0, x_mean=1.0, y_mean=1.0)["w"] > 0
 
 
 def test_it_is_blind_to_the_order_of_spikes_in_a_window() -> None:

@@ -25,8 +25,8 @@ def test_a_lone_postsynaptic_spike_changes_nothing() -> None:
 
 
 def test_each_side_reads_what_is_left_of_the_other() -> None:
-    assert RULE.on_pre(o=0.75) == {"w": pytest.approx(0.1 * (0.75 - 0.5))}
-    assert RULE.on_post(r=0.75) == {"w": pytest.approx(0.1 * 0.75)}
+    assert RULE.at_pre(o=0.75) == {"w": pytest.approx(0.1 * (0.75 - 0.5))}
+    assert RULE.at_post(r=0.75) == {"w": pytest.approx(0.1 * 0.75)}
 
 
 @pytest.mark.parametrize("lag", [0.5, 10.0, 60.0])
@@ -68,4 +68,4 @@ def test_each_input_learns_from_its_own_spikes() -> None:
 def test_the_published_targets_give_the_published_alpha(chosen: str, alpha: float) -> None:
     """Vogels et al. 2011, from memory (mid which is used where): alpha = 2 rho_0 tau."""
     rule = InhibitoryBalance.from_set(chosen)
-    assert rule.on_pre(o=0.0)["w"] == pytest.approx(-rule.eta * alpha, rel=1e-12)
+    assert rule.at_pre(o=0.0)["w"] == pytest.approx(-rule.eta * alpha, rel=1e-12)

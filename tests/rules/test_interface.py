@@ -29,15 +29,15 @@ class Counter(Rule):
     x = trace("pre", tau="tau", jump="set")
     y = trace("post", tau=30.0)
 
-    def on_pre(self, x: float, y: float, seen: float, level: float, t: float) -> Changes:
+    def at_pre(self, x: float, y: float, seen: float, level: float, t: float) -> Changes:
         """Everything of an input hook."""
         return {"v": self.step * x, "seen": 1.0}
 
-    def on_post(self, x: float, amplitude: float) -> Changes:
+    def at_post(self, x: float, amplitude: float) -> Changes:
         """A second hook."""
         return {"u": self.step * x * amplitude}
 
-    def cell_on_post(self, y: float, level: float, t: float) -> Changes:
+    def cell_at_post(self, y: float, level: float, t: float) -> Changes:
         """Everything of a cell hook."""
         return {"level": self.step * y}
 
@@ -53,10 +53,10 @@ class Counter(Rule):
 def declared(**body: object) -> type[Rule]:
     """Return a rule of one weight and one hook, with `body` over it."""
 
-    def on_pre(self: Rule) -> Changes:
+    def at_pre(self: Rule) -> Changes:
         return {"w": 0.0}
 
-    whole = {"__doc__": "A rule.", "w": weight(1.0, low=0.0, high=2.0), "on_pre": on_pre, **body}
+    whole = {"__doc__": "A rule.", "w": weight(1.0, low=0.0, high=2.0), "at_pre": at_pre, **body}
     return type("Wrong", (Rule,), {k: v for k, v in whole.items() if v is not None})
 
 
@@ -82,9 +82,9 @@ def test_variables_are_no_attributes_of_the_instance() -> None:
 
 def test_hooks_list_their_arguments_without_self() -> None:
     assert Counter.hooks() == {
-        "on_pre": ("x", "y", "seen", "level", "t"),
-        "on_post": ("x", "amplitude"),
-        "cell_on_post": ("y", "level", "t"),
+        "at_pre": ("x", "y", "seen", "level", "t"),
+        "at_post": ("x", "amplitude"),
+        "cell_at_post": ("y", "level", "t"),
         "flow": ("dt", "v", "seen"),
         "cell_flow": ("dt", "level"),
     }
@@ -111,8 +111,8 @@ def test_a_rule_without_a_weight_is_refused() -> None:
 
 
 def test_a_rule_without_a_hook_is_refused() -> None:
-    with pytest.raises(RuleError, match="Wrong: a rule needs a hook; known hooks are on_pre, "):
-        declared(on_pre=None)
+    with pytest.raises(RuleError, match="Wrong: a rule needs a hook; known hooks are at_pre, "):
+        declared(at_pre=None)
 
 
 def test_a_rule_is_final() -> None:
@@ -120,15 +120,15 @@ def test_a_rule_is_final() -> None:
         type("Heir", (Counter,), {})
 
 
-@pytest.mark.parametrize("name", ["on_spike", "on_presynaptic", "cell_on_pre", "cell_step"])
+@pytest.mark.parametrize("name", ["at_spike", "at_presynaptic", "cell_at_pre", "cell_step"])
 def test_an_unknown_hook_is_refused(name: str) -> None:
-    with pytest.raises(RuleError, match=rf"Wrong\.{name}: no such hook; known hooks are on_pre"):
+    with pytest.raises(RuleError, match=rf"Wrong\.{name}: no such hook; known hooks are at_pre"):
         declared(**{name: lambda self: {}})
 
 
 def test_the_refusal_of_a_hook_lists_them_all() -> None:
     with pytest.raises(RuleError) as caught:
-        declared(on_spike=lambda self: {})
+        declared(at_spike=lambda self: {})
     assert all(hook in str(caught.value) for hook in HOOKS)
 
 
@@ -159,14 +159,14 @@ OF_PRE = {"r1": trace("pre", tau=20.0)}
 @pytest.mark.parametrize(
     ("body", "said"),
     [
-        ({"on_pre": wants_r1}, r"on_pre: nothing is called 'r1' there; known names are t, w$"),
-        ({"on_pre": wants_dt}, r"on_pre: nothing is called 'dt' there; known names are t, w$"),
-        ({"on_pre": wants_amplitude}, "on_pre: nothing is called 'amplitude' there"),
+        ({"at_pre": wants_r1}, r"at_pre: nothing is called 'r1' there; known names are t, w$"),
+        ({"at_pre": wants_dt}, r"at_pre: nothing is called 'dt' there; known names are t, w$"),
+        ({"at_pre": wants_amplitude}, "at_pre: nothing is called 'amplitude' there"),
         ({"flow": wants_r1, **OF_PRE}, "flow: nothing is called 'r1' there"),
         ({"flow": wants_theta, **OF_CELL}, "flow: nothing is called 'theta' there"),
         ({"cell_flow": wants_w}, "cell_flow: nothing is called 'w' there"),
-        ({"cell_on_post": wants_w}, "cell_on_post: nothing is called 'w' there"),
-        ({"cell_on_post": wants_r1, **OF_PRE}, "cell_on_post: nothing is called 'r1' there"),
+        ({"cell_at_post": wants_w}, "cell_at_post: nothing is called 'w' there"),
+        ({"cell_at_post": wants_r1, **OF_PRE}, "cell_at_post: nothing is called 'r1' there"),
     ],
     ids=[
         "undeclared",
@@ -205,6 +205,16 @@ def test_a_number_that_names_no_parameter_is_refused(body: dict[str, object]) ->
 def test_an_amplitude_that_is_no_parameter_is_refused() -> None:
     with pytest.raises(RuleError, match="Wrong: amplitude 'a_plus' is no parameter of the rule"):
         declared(amplitudes=("a_plus",))
+
+
+def test_a_rate_power_that_is_of_no_parameter_is_refused() -> None:
+    with pytest.raises(RuleError, match="Wrong: rate power 'eta' is no parameter of the rule"):
+        declared(rate_powers={"eta": -2})
+
+
+def test_an_exemption_without_a_reason_is_refused() -> None:
+    with pytest.raises(RuleError, match="Wrong: the exemption from 'silence' needs a reason"):
+        declared(exempt={"silence": " "})
 
 
 def test_a_rule_that_reads_rates_needs_its_window() -> None:

@@ -23,11 +23,11 @@ def change(pre: list[float], post: list[float], rule: PairTiming = RULE) -> floa
 
 
 def test_a_presynaptic_spike_depresses_by_what_is_left_of_postsynaptic_ones() -> None:
-    assert RULE.on_pre(o1=0.5, w=1.0) == {"w": -0.025}
+    assert RULE.at_pre(o1=0.5, w=1.0) == {"w": -0.025}
 
 
 def test_a_postsynaptic_spike_potentiates_by_what_is_left_of_presynaptic_ones() -> None:
-    assert RULE.on_post(r1=0.5, w=1.0) == {"w": 0.05}
+    assert RULE.at_post(r1=0.5, w=1.0) == {"w": 0.05}
 
 
 def test_pre_before_post_potentiates_and_post_before_pre_depresses() -> None:
@@ -99,7 +99,7 @@ def test_the_multiplicative_set_starts_in_the_middle_of_its_range() -> None:
 
 
 def test_without_an_exponent_a_change_does_not_know_its_weight() -> None:
-    ends = [(RULE.on_pre(o1=0.5, w=w), RULE.on_post(r1=0.5, w=w)) for w in (0.0, 1.0, 10.0)]
+    ends = [(RULE.at_pre(o1=0.5, w=w), RULE.at_post(r1=0.5, w=w)) for w in (0.0, 1.0, 10.0)]
     assert ends == [({"w": -0.025}, {"w": 0.05})] * 3
 
 

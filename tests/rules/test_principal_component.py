@@ -17,12 +17,12 @@ def on_spikes(rule: PrincipalComponent, pre: object, post: object, **options: ob
 
 def test_it_grows_with_both_rates_and_decays_with_the_square_of_the_cells() -> None:
     rule = PrincipalComponent(eta=0.1, alpha=0.5)
-    assert rule.on_presentation(3.0, 4.0, w=0.0) == {"w": pytest.approx(0.1 * 4 * 3)}
-    assert rule.on_presentation(0.0, 4.0, w=2.0) == {"w": pytest.approx(-0.1 * 16 * 0.5 * 2)}
+    assert rule.at_presentation(3.0, 4.0, w=0.0) == {"w": pytest.approx(0.1 * 4 * 3)}
+    assert rule.at_presentation(0.0, 4.0, w=2.0) == {"w": pytest.approx(-0.1 * 16 * 0.5 * 2)}
 
 
 def test_a_silent_cell_does_not_change() -> None:
-    assert PrincipalComponent().on_presentation(50.0, 0.0, w=2.0) == {"w": 0.0}
+    assert PrincipalComponent().at_presentation(50.0, 0.0, w=2.0) == {"w": 0.0}
 
 
 @pytest.mark.parametrize("alpha", [0.25, 1.0, 4.0])
@@ -73,4 +73,4 @@ def test_a_signed_weight_stops_at_its_bounds(
 def test_the_pattern_set_is_the_published_rule() -> None:
     """Oja 1982 (abstract looked up): dw = eta y (x - y w)."""
     rule = PrincipalComponent.from_set("patterns", eta=0.5)
-    assert rule.on_presentation(3.0, 2.0, w=0.25) == {"w": 0.5 * 2 * (3 - 2 * 0.25)}
+    assert rule.at_presentation(3.0, 2.0, w=0.25) == {"w": 0.5 * 2 * (3 - 2 * 0.25)}

@@ -23,17 +23,17 @@ def on_spikes(
 
 def test_the_sign_of_a_change_is_that_of_rate_minus_threshold() -> None:
     rule = SlidingThreshold(eta=1e-3)
-    changes = [rule.on_presentation(10.0, y, theta=20.0)["w"] for y in (0.0, 10.0, 20.0, 30.0)]
+    changes = [rule.at_presentation(10.0, y, theta=20.0)["w"] for y in (0.0, 10.0, 20.0, 30.0)]
     assert changes == pytest.approx([0.0, -1.0, 0.0, 3.0])
 
 
 def test_a_silent_input_does_not_change() -> None:
-    assert SlidingThreshold().on_presentation(0.0, 50.0, theta=10.0) == {"w": 0.0}
+    assert SlidingThreshold().at_presentation(0.0, 50.0, theta=10.0) == {"w": 0.0}
 
 
 def test_the_threshold_goes_to_rest_plus_the_square_of_the_rate() -> None:
     rule = SlidingThreshold(window=10, tau_theta=1, theta_rest=3, y_0=5)
-    moved = rule.cell_on_presentation(10.0, theta=7.0)["theta"]
+    moved = rule.cell_at_presentation(10.0, theta=7.0)["theta"]
     assert 7.0 + moved == pytest.approx(3 + 100 / 5, abs=20 * math.exp(-10))
 
 

@@ -37,7 +37,7 @@ def test_silence_sums_what_is_missing_when_told_to() -> None:
 
 
 def test_a_spike_adds_one_over_tau_to_the_activity_and_nothing_else() -> None:
-    assert SynapticScaling(tau=50_000).on_post() == {"a": pytest.approx(1 / 50)}
+    assert SynapticScaling(tau=50_000).at_post() == {"a": pytest.approx(1 / 50)}
 
 
 def test_steady_firing_is_measured_in_hertz() -> None:

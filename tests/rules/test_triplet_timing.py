@@ -27,11 +27,11 @@ def change(pre: list[float], post: list[float], rule: TripletTiming = RULE) -> f
 
 
 def test_a_presynaptic_spike_depresses_more_after_another() -> None:
-    assert RULE.on_pre(o1=0.5, r2=0.25)["w"] == pytest.approx(-0.5 * (0.03 + 0.04 * 0.25))
+    assert RULE.at_pre(o1=0.5, r2=0.25)["w"] == pytest.approx(-0.5 * (0.03 + 0.04 * 0.25))
 
 
 def test_a_postsynaptic_spike_potentiates_more_after_another() -> None:
-    assert RULE.on_post(r1=0.5, o2=0.25)["w"] == pytest.approx(0.5 * (0.01 + 0.02 * 0.25))
+    assert RULE.at_post(r1=0.5, o2=0.25)["w"] == pytest.approx(0.5 * (0.01 + 0.02 * 0.25))
 
 
 def test_a_lone_pair_does_not_see_the_slow_trace_of_its_own_spike() -> None:

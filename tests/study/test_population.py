@@ -229,7 +229,7 @@ class Squared(Rule):
 
     w = weight(1.0, low=0.0, high=3.0)
 
-    def on_pre(self) -> Changes:
+    def at_pre(self) -> Changes:
         return {"w": 0.0}
 
     def factor(self, w: float) -> float:

@@ -9,6 +9,7 @@ import xarray as xr
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
+from plastic.report.counts import simulated
 from plastic.report.figures.curves import (
     is_complete,
     quartiles,
@@ -23,6 +24,7 @@ from plastic.report.pathways import criterion_input, parent_of
 
 TIME = "time from the start of the induction (min)"
 AXIS = "EPSP of {input} (% of baseline)"
+AXIS_OF_ALL = "EPSP (% of baseline)"
 
 
 def time_course(
@@ -37,12 +39,13 @@ def time_course(
                 rows += _course(dataset, rule, route, protocol, other)
     rules = labels(rows, "rule")
     told = (
-        f"{words(protocol)}: median and quartiles of {dataset.sizes['cell']} simulated cells; "
+        f"{words(protocol)}: median and quartiles of {simulated(dataset.sizes['cell'])}; "
         f"the induction is shaded{_others_told(dataset, name)}{scales(False)}"
         f"{told_illustrative(rules, illustrative)}"
     )
     names = rule_names(rules, illustrative)
-    plan = Plan(told, TIME, AXIS.format(input=words(name)), names, same_y=False)
+    axis = AXIS_OF_ALL if len(labels(rows, "input")) > 1 else AXIS.format(input=words(name))
+    plan = Plan(told, TIME, axis, names, same_y=False)
 
     def draw(rows: Rows, width: float) -> Figure:
         routes = labels(rows, "route")
@@ -72,7 +75,7 @@ def controls(dataset: xr.Dataset, protocol: str, *, illustrative: Collection[str
     rules = labels(rows, "rule")
     told = (
         f"{words(protocol)} and its controls, by {words(route)}: median and quartiles of "
-        f"{dataset.sizes['cell']} simulated cells; the induction is shaded{scales(False)}"
+        f"{simulated(dataset.sizes['cell'])}; the induction is shaded{scales(False)}"
         f"{told_illustrative(rules, illustrative)}"
     )
     names = [words(member.removeprefix(f"{protocol}, ")) for member in labels(rows, "protocol")]
@@ -134,7 +137,9 @@ def _course(dataset: xr.Dataset, rule: str, route: str, protocol: str, name: str
 
 def _others_told(dataset: xr.Dataset, name: str) -> str:
     others = [words(str(label)) for label in dataset["input"].values if str(label) != name]
-    return f"; thin lines without marks: {', '.join(others)}" if others else ""
+    if not others:
+        return ""
+    return f"; lines with marks: {words(name)}; thin lines without marks: {', '.join(others)}"
 
 
 def _frame(axes: Axes, rows: Rows) -> None:

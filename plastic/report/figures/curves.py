@@ -11,6 +11,7 @@ from matplotlib.figure import Figure
 from numpy.typing import NDArray
 
 from plastic.report.arms import COMPLETE
+from plastic.report.counts import simulated
 from plastic.report.figures.picture import Picture, Row, Rows, labels, numbers, where
 from plastic.report.figures.sheet import Plan
 from plastic.report.figures.style import THRESHOLD, line, marks, words
@@ -23,11 +24,11 @@ Floats = NDArray[np.float64]
 #: variable -> (word in the file name, what the y axis says, what the heading says)
 CURVES: Mapping[str, tuple[str, str, str]] = {
     "fires_alone_induced": (
-        "induced", "probability that {input} alone fires the cell",
+        "induced", "share of cells at criterion",
         "by the change induced so far, once it will all be expressed",
     ),
     "fires_alone": (
-        "expressed", "probability that {input} alone fires the cell",
+        "expressed", "share of cells at criterion",
         "by the change expressed at that time",
     ),
     "epsp_peak": (
@@ -40,6 +41,9 @@ def learning_curve(
     dataset: xr.Dataset, protocol: str, variable: str, *, illustrative: Collection[str] = ()
 ) -> Picture:
     """Return the learning curves of one protocol.
+
+    Firing probabilities lie near 0 or near 1, so that their median says little: drawn is the share
+    of cells in which they are at the criterion.
 
     Parameters
     ----------
@@ -54,11 +58,15 @@ def learning_curve(
     name = criterion_input(dataset)
     word, axis, meaning = CURVES[variable]
     rows = _rows(dataset, protocol, variable, name)
-    told = (
-        f"{words(protocol)}: median and quartiles of {dataset.sizes['cell']} simulated cells, "
-        f"{meaning}"
-    )
     probability = variable != "epsp_peak"
+    cells = simulated(dataset.sizes["cell"])
+    drawn = (
+        f"share of {cells} at criterion ({words(name)} alone fires the cell with probability ≥ "
+        f"{float(dataset.attrs['alone_fires']):g})"
+        if probability
+        else f"median and quartiles of {cells}"
+    )
+    told = f"{words(protocol)}: {drawn}, {meaning}"
     names = [*rule_names(labels(rows, "rule"), illustrative), level(dataset, variable)[1]]
     plan = Plan(
         told + scales(probability) + told_illustrative(labels(rows, "rule"), illustrative),
@@ -91,7 +99,7 @@ def level(dataset: xr.Dataset, variable: str) -> tuple[float, str]:
     if variable == "epsp_peak":
         above = np.asarray(dataset["threshold"].values, dtype=float) - float(dataset.attrs["rest"])
         return float(np.median(above)), "spike threshold above rest, median cell"
-    return float(dataset.attrs["alone_fires"]), "criterion"
+    return 0.5, "half of the cells"
 
 
 def is_complete(dataset: xr.Dataset, rule: str, route: str, protocol: str) -> bool:
@@ -123,11 +131,22 @@ def _rows(dataset: xr.Dataset, protocol: str, variable: str, name: str) -> list[
                 {
                     "protocol": protocol, "route": route, "rule": rule, "repeats": float(r),
                     "lower_quartile": float(a), "median": float(m), "upper_quartile": float(b),
-                    "threshold_line": threshold, "threshold_is": meaning,
+                    "threshold_line": threshold, "threshold_is": meaning, **share,
                 }
-                for r, a, m, b in zip(repeats, low, median, high, strict=True)
+                for r, a, m, b, share in zip(
+                    repeats, low, median, high, _shares(dataset, variable, values), strict=True
+                )
             ]  # fmt: skip
     return found
+
+
+def _shares(dataset: xr.Dataset, variable: str, values: Floats) -> list[Row]:
+    """Return at each reading which share of the cells is at the criterion; nothing of an EPSP."""
+    if variable == "epsp_peak":
+        return [{}] * values.shape[1]
+    criterion = float(dataset.attrs["alone_fires"])
+    shares = np.mean(values >= criterion, axis=0)
+    return [{"criterion": criterion, "share_at_criterion": float(share)} for share in shares]
 
 
 def _during(dataset: xr.Dataset, protocol: str) -> tuple[slice, Floats]:
@@ -157,11 +176,13 @@ def _curve(axes: Axes, rows: Rows, k: int, label: str) -> None:
     if not rows:
         return
     x, look = numbers(rows, "repeats"), line(k)
-    axes.fill_between(
-        x, numbers(rows, "lower_quartile"), numbers(rows, "upper_quartile"),
-        color=look.color, alpha=0.18, linewidth=0,
-    )  # fmt: skip
+    drawn = "share_at_criterion" if "share_at_criterion" in rows[0] else "median"
+    if drawn == "median":
+        axes.fill_between(
+            x, numbers(rows, "lower_quartile"), numbers(rows, "upper_quartile"),
+            color=look.color, alpha=0.18, linewidth=0,
+        )  # fmt: skip
     axes.plot(
-        x, numbers(rows, "median"), color=look.color, linestyle=look.linestyle,
+        x, numbers(rows, drawn), color=look.color, linestyle=look.linestyle,
         marker=look.marker, markevery=marks(x, k), label=label,
     )  # fmt: skip

@@ -11,6 +11,7 @@ from matplotlib.patches import Rectangle
 
 from plastic.report.arms import ALREADY, Arm
 from plastic.report.comparison import Comparison
+from plastic.report.counts import simulated
 from plastic.report.figures.picture import Picture, Row, Rows, labels, where
 from plastic.report.figures.style import (
     SMALLEST,
@@ -18,14 +19,17 @@ from plastic.report.figures.style import (
     height_of,
     on_paper,
     size_of,
+    text_width,
     words,
     wrapped,
 )
 from plastic.report.grid import EXTRAPOLATED, ILLUSTRATIVE
-from plastic.report.matrices import cause_letters, percent
+from plastic.report.matrices import COMMONEST, cause_letters, percent
 
 #: lightness of a cell at one repeat and at the protocol's end, so that it reads in grey too
 EARLY, LATE = 0.62, 0.95
+#: keeps a phrase of a cell on one line
+UNBROKEN = "\u00a0"
 #: mm; from line to line within a cell
 LINE = 2.8
 
@@ -41,7 +45,8 @@ def matrix(comparison: Comparison, protocol: str) -> Picture:
     arms = [arm for arm in comparison.arms if arm.protocol == protocol]
     letters = cause_letters(arms)
     rows = [_row(comparison, arm, letters) for arm in arms]
-    notes = [f"{letter}: {cause}" for cause, letter in letters.items()]
+    causes = "; ".join(f"({letter}){UNBROKEN}{cause}" for cause, letter in letters.items())
+    notes = [f"never, {COMMONEST} {causes}"] if causes else []
     if any(arm.extrapolated > 0 for arm in arms):
         notes.append(f"{EXTRAPOLATED} beyond the dose at which the rule was measured")
     if any(float(row["share_already_expressed"]) > 0 for row in rows):
@@ -52,9 +57,8 @@ def matrix(comparison: Comparison, protocol: str) -> Picture:
         if rule in comparison.illustrative
     ]
     told = (
-        f"{words(protocol)}: repeats until {words(comparison.input)} alone fires the cell; median, "
-        f"quartiles and share of {comparison.cells} simulated cells that get there, by the change "
-        "expressed at that time"
+        f"{words(protocol)}: repeats until {words(comparison.input)} alone fires the cell, by the "
+        f"change expressed then; median, quartiles and share of {simulated(comparison.cells)}"
     )
 
     def draw(rows: Rows, width: float) -> Figure:
@@ -141,7 +145,7 @@ def _cell(axes: Axes, box: tuple[float, float, float, float], row: Row, lines: l
         first = k == 0
         axes.text(
             x + wide / 2, place, text, ha="center", va="center_baseline",
-            size=7 if first else SMALLEST,
+            size=7 if first and _is_count(shown) else SMALLEST,
             weight="bold" if first and _is_count(shown) else "normal", bbox=back,
         )  # fmt: skip
 
@@ -158,20 +162,31 @@ def _lines(row: Row, room: float, wide: bool) -> list[str]:
     found = [f"{shown}{sign}"] if _is_count(shown) else [never] if shown == "never" else [shown]
     if _is_count(shown) and math.isfinite(low):
         found.append(f"{_count(low, row)} to {_count(high, row)}")
+    found.append(f"{percent(share)} reached")
     late = float(row["share_late_expressed"])
-    found.append(f"{percent(share)} reached" + (f" ({percent(late)} later)" if late > 0 else ""))
+    found += [f"({percent(late)} later)"] if late > 0 else []
     if shown != "never" and float(row["share_never_expressed"]) > 0:
         found.append(never)
     already = float(row["share_already_expressed"])
     if already > 0 and shown != ALREADY:
         found.append(f"already {percent(already)}")
-    if wide and row["shown_induced"] != shown:
-        found.append(f"induced: {row['shown_induced']}")
     first, *rest = found
-    lines = wrapped(first, room).split("\n")
     if wide:
-        return [*lines, *wrapped(", ".join(rest), room, SMALLEST).split("\n")]
-    return [*lines, *(part for text in rest for part in wrapped(text, room, SMALLEST).split("\n"))]
+        told = ", ".join(text.replace(" ", UNBROKEN) for text in rest).replace(", (", " (")
+        return [*_unbroken(first, room), *wrapped(told, room, SMALLEST).split("\n")]
+    return [line for text in found for line in _unbroken(text, room)]
+
+
+def _unbroken(text: str, room: float) -> list[str]:
+    """Return a phrase on one line; on several, a number with its %, where there is no room."""
+    whole = text.replace(" ", UNBROKEN)
+    if text_width(whole, _size(text)) <= room:
+        return [whole]
+    return wrapped(text.replace(" %", f"{UNBROKEN}%"), room, _size(text)).split("\n")
+
+
+def _size(text: str) -> float:
+    return 7.0 if _is_count(text) and "%" not in text else SMALLEST
 
 
 def _count(value: float, row: Row) -> str:

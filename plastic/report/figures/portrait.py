@@ -2,15 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 import numpy as np
 from matplotlib.figure import Figure
 
 from plastic.engine.imposed import impose
+from plastic.report.figures.curves import rule_names, told_illustrative
 from plastic.report.figures.picture import Picture, Row, Rows, labels, numbers, where
 from plastic.report.figures.sheet import Plan, Sheet
-from plastic.report.figures.style import THRESHOLD, line, words
+from plastic.report.figures.style import THRESHOLD, line
 from plastic.rules._interface import Rule
 
 PAIRS = 60
@@ -52,12 +53,15 @@ def lag_window(rules: Mapping[str, Rule]) -> Picture:
         for label, rule in rules.items()
         for lag in LAGS
     ]  # fmt: skip
-    told = f"Change by {PAIRS} imposed pairs at {1000 / EVERY:g} Hz, without a cell"
+    told = f"Change by {PAIRS} imposed pairs at {1000 / EVERY:g} Hz, without a cell{_told(rules)}"
 
-    plan = Plan(told, "lag, t_post − t_pre (ms)", AXIS, height=28, wide=3)
+    plan = Plan(
+        told, "lag, t_post − t_pre (ms)", AXIS, height=28, wide=3, apart=_illustrative(rules)
+    )
+    titles = rule_names(list(rules), _signed(rules))
 
     def draw(rows: Rows, width: float) -> Figure:
-        sheet = _frames(rows, width, plan)
+        sheet = _frames(titles, width, plan)
         for axes, rule in zip(sheet.panels, labels(rows, "rule"), strict=True):
             mine = where(rows, rule=rule)
             axes.axvline(0, color="0.6", linewidth=0.5)
@@ -81,13 +85,19 @@ def rate_dependence(rules: Mapping[str, Rule]) -> Picture:
         for lag in (NEAR_LAG, -NEAR_LAG)
         for rate in RATES
     ]  # fmt: skip
-    told = f"Change by {PAIRS} imposed continuous pairs, without a cell; lag is t_post − t_pre"
+    told = (
+        f"Change by {PAIRS} imposed continuous pairs, without a cell; lag is t_post − t_pre"
+        f"{_told(rules)}"
+    )
 
     names = [f"lag {lag:+g} ms".replace("-", "−") for lag in (NEAR_LAG, -NEAR_LAG)]
-    plan = Plan(told, "rate of pairs (Hz)", AXIS, names, height=28, wide=3)
+    plan = Plan(
+        told, "rate of pairs (Hz)", AXIS, names, height=28, wide=3, apart=_illustrative(rules)
+    )
+    titles = rule_names(list(rules), _signed(rules))
 
     def draw(rows: Rows, width: float) -> Figure:
-        sheet = _frames(rows, width, plan)
+        sheet = _frames(titles, width, plan)
         for axes, rule in zip(sheet.panels, labels(rows, "rule"), strict=True):
             for k, lag in enumerate((NEAR_LAG, -NEAR_LAG)):
                 mine = [row for row in where(rows, rule=rule) if float(row["lag_ms"]) == lag]
@@ -101,8 +111,23 @@ def rate_dependence(rules: Mapping[str, Rule]) -> Picture:
     return Picture("rate_dependence", rows, draw)
 
 
-def _frames(rows: Rows, width: float, plan: Plan) -> Sheet:
-    sheet = plan.sheet(width, [words(rule) for rule in labels(rows, "rule")])
+def _signed(rules: Mapping[str, Rule]) -> list[str]:
+    return [label for label, rule in rules.items() if rule.illustrative]
+
+
+def _illustrative(rules: Mapping[str, Rule]) -> list[int]:
+    """Return the places of rules whose size is not to be read beside the others."""
+    found = [k for k, rule in enumerate(rules.values()) if rule.illustrative]
+    return found if len(found) < len(rules) else []
+
+
+def _told(rules: Mapping[str, Rule]) -> str:
+    sign = told_illustrative(list(rules), _signed(rules))
+    return f"{sign}, on a vertical axis of its own" if _illustrative(rules) else sign
+
+
+def _frames(titles: Sequence[str], width: float, plan: Plan) -> Sheet:
+    sheet = plan.sheet(width, titles)
     for axes in sheet.panels:
         axes.axhline(0, **{**THRESHOLD, "linewidth": 0.5})
     return sheet

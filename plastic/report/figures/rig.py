@@ -9,6 +9,7 @@ import xarray as xr
 from matplotlib.axes import Axes
 from matplotlib.figure import Figure
 
+from plastic.report.counts import simulated
 from plastic.report.figures.curves import (
     is_complete,
     quartiles,
@@ -20,6 +21,8 @@ from plastic.report.figures.sheet import Plan
 from plastic.report.figures.style import SMALLEST, line, words, wrapped
 from plastic.report.pathways import criterion_input, last_values
 
+#: least span of an axis; of a rate that is 0 everywhere, not its rounding errors
+LEAST, LEAST_RATE = 0.02, 0.1
 #: variable -> title of its panel
 MEASURES: Mapping[str, str] = {
     "epsp_peak": "mean EPSP (mV)",
@@ -43,7 +46,7 @@ def before_after(
                 rows += [_row(dataset, rule, route, protocol, name, key) for key in MEASURES]
     told = (
         f"{words(protocol)}, {words(name)}: end of baseline (open, dotted) and last reading "
-        f"(filled); median and quartiles of {dataset.sizes['cell']} simulated cells"
+        f"(filled); median and quartiles of {simulated(dataset.sizes['cell'])}"
     )
 
     names = rule_names(labels(rows, "rule"), illustrative)
@@ -86,7 +89,7 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
             if y:
                 axes.axhline(y - 0.5, color="0.85", linewidth=0.5)
         axes.tick_params(axis="y", length=0)
-        _spread_out(axes)
+        _spread_out(axes, LEAST_RATE if measure == MEASURES["failure_rate"] else LEAST)
         axes.locator_params(axis="x", nbins=3 if width < 120 else 4)
     sheet.panels[0].set_yticks(range(len(routes)), places)
     sheet.panels[0].set_ylim(len(routes) - 0.5, -0.5)
@@ -94,13 +97,14 @@ def _draw(rows: Rows, width: float, told: str, names: Sequence[str]) -> Figure:
     return sheet.figure
 
 
-def _spread_out(axes: Axes) -> None:
+def _spread_out(axes: Axes, least: float) -> None:
     """Widen an axis on which nothing differs, lest rounding errors look like findings."""
-    low, high = axes.get_xlim()
-    middle, least = (low + high) / 2, max(0.02, 0.02 * abs(low + high) / 2)
+    low, high = axes.dataLim.intervalx  # not the view, which is never narrow around 0
+    middle = (low + high) / 2
+    least = max(least, LEAST * abs(middle))
     if high - low < least:
         start = middle - least / 2
-        if axes.dataLim.x0 >= 0:  # a rate or a size has no negative side
+        if low >= 0:  # a rate or a size has no negative side
             start = max(start, -0.05 * least)
         axes.set_xlim(start, start + least)
 

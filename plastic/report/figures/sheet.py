@@ -6,7 +6,7 @@ Every distance is known before anything is drawn, so nothing overlaps and nothin
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Collection, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -58,6 +58,8 @@ class Plan:
         Most panels in a row at 85 and at 180 mm.
     same_x, same_y : bool
         Whether all panels share the axis.
+    apart : collection of int
+        Panels that keep a vertical axis of their own where the others share one.
     left : float, mm
         Room for the tick labels of the vertical axis.
     """
@@ -71,12 +73,14 @@ class Plan:
     wide: int = 4
     same_x: bool = True
     same_y: bool = True
+    apart: Collection[int] = ()
     left: float = TICKS_Y
 
     def sheet(self, width: float, titles: Sequence[str]) -> Sheet:
         """Return the sheet with one panel for each title, `width` mm wide."""
         columns = min(len(titles), self.narrow if width < 120 else self.wide)
-        gap = 3.2 if self.same_y else self.left + 2.0
+        own_y = bool(self.apart) or not self.same_y
+        gap = self.left + 2.0 if own_y else 3.2
         rows = math.ceil(len(titles) / columns)
         named = wrapped(self.y, rows * self.height + (rows - 1) * TICKS_X + 4.0)
         left = EDGE + height_of(named) * 1.2 + self.left
@@ -95,23 +99,25 @@ class Plan:
             row, column = divmod(k, columns)
             above = row * (self.height + TICKS_X) + sum(over[: row + 1])
             box = (left + column * (wide + gap), under + body - above - self.height)
-            axes = self._panel(figure, (*box, wide, self.height), panels[:1])
+            axes = self._panel(figure, (*box, wide, self.height), panels)
             axes.set_title(title)
             axes.tick_params(
                 labelbottom=k + columns >= len(titles) or not self.same_x,
-                labelleft=column == 0 or not self.same_y,
+                labelleft=column == 0 or own_y,
             )
             panels.append(axes)
         middle = ((left + width - RIGHT) / 2, under + TICKS_X + (body - TICKS_X - over[0]) / 2)
         self._written(figure, told, named, middle)
         return Sheet(figure, panels)
 
-    def _panel(self, figure: Figure, box: Sequence[float], first: Sequence[Axes]) -> Axes:
-        """Return an empty panel at left, bottom, width, height in mm."""
+    def _panel(self, figure: Figure, box: Sequence[float], before: Sequence[Axes]) -> Axes:
+        """Return an empty panel at left, bottom, width, height in mm; `before` are those there."""
+        alike = [axes for k, axes in enumerate(before) if k not in self.apart]
+        shares_y = self.same_y and len(before) not in self.apart
         return figure.add_axes(
             on_paper(figure, box),
-            sharex=first[0] if first and self.same_x else None,
-            sharey=first[0] if first and self.same_y else None,
+            sharex=before[0] if before and self.same_x else None,
+            sharey=alike[0] if alike and shares_y else None,
         )
 
     def _written(self, figure: Figure, told: str, named: str, middle: tuple[float, float]) -> None:

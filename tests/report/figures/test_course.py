@@ -32,6 +32,15 @@ def test_control_pathways_are_drawn_too(bursts):
     )
 
 
+def test_the_axis_names_an_input_only_when_there_is_no_other(bursts):
+    def axis(dataset):
+        said = [t.get_text() for t in time_course(dataset, "bursts").figure(180).texts]
+        return [text for text in said if "of baseline" in text]
+
+    assert axis(bursts) == ["EPSP (% of baseline)"]
+    assert axis(bursts.sel(input=["far"])) == ["EPSP of far (% of baseline)"]
+
+
 def test_controls_stand_beside_their_protocol_on_the_route_they_were_run_on(bursts):
     rows = controls(bursts, "bursts").rows
     assert {row["route"] for row in rows} == {"release_probability"}

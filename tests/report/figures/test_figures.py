@@ -122,3 +122,13 @@ def test_the_checks_of_this_file_can_fail(pictures, tmp_path):
     write_rows(tmp_path / "numbers.csv", pictures["lag_window"].rows)
     found = looking.missing(looking.plotted_numbers(figure), tmp_path / "numbers.csv")
     assert found.tolist() == [1.2345, 6.789]
+
+
+def test_a_single_cell_is_called_one_in_every_figure(bursts):
+    said = " ".join(
+        text.get_text().replace("\n", " ")
+        for picture in pictures_of(bursts.isel(cell=[0]))
+        for text in picture.figure(180).texts
+    )
+    assert said.count("1 simulated cell") > 5
+    assert "1 simulated cells" not in said

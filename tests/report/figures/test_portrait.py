@@ -47,6 +47,23 @@ def test_a_rule_blind_to_order_has_a_window_that_is_even():
         assert by_lag[lag] == pytest.approx(by_lag[-lag], abs=1e-9)
 
 
+@pytest.mark.parametrize("portrait", [lag_window, rate_dependence])
+def test_an_illustrative_rule_has_its_sign_and_an_axis_of_its_own(portrait):
+    """Whatever its place: the others share theirs."""
+    rules = {"sliding": SlidingThreshold(), "pair": PairTiming(), "triplet": TripletTiming()}
+    figure = portrait(rules).figure(85)
+    sliding, pair, triplet = figure.axes
+    assert [axes.get_title() for axes in figure.axes] == ["sliding ‡", "pair", "triplet"]
+    assert "‡\u00a0illustrative" in figure.texts[0].get_text()
+    assert pair.get_ylim() == triplet.get_ylim() != sliding.get_ylim()
+
+
+def test_illustrative_rules_alone_share_their_axis():
+    rules = {"one": SlidingThreshold(), "two": SlidingThreshold(tau_theta=2000.0)}
+    one, two = rate_dependence(rules).figure(85).axes
+    assert one.get_ylim() == two.get_ylim()
+
+
 def test_schedule_and_lag_are_told_beside_every_number():
     row = rate_dependence({"pair": PairTiming()}).rows[0]
     assert set(row) == {"rule", "lag_ms", "pairs", "rate_hz", "change_percent"}

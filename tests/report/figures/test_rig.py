@@ -44,3 +44,14 @@ def test_what_does_not_differ_is_not_blown_up(bursts, width):
     for axes in figure.axes:
         if axes.get_title() in ("failure rate", "paired-pulse ratio"):
             assert np.diff(axes.get_xlim())[0] >= 0.0199
+
+
+def test_a_failure_rate_of_0_everywhere_has_an_axis_of_percents(bursts):
+    flat = bursts.copy(deep=True)
+    flat["failure_rate"][:] = 0.0
+    axes = next(
+        axes for axes in before_after(flat, "bursts").figure(85).axes
+        if axes.get_title() == "failure rate"
+    )  # fmt: skip
+    low, high = axes.get_xlim()
+    assert -0.01 < low < 0 < 0.09 < high < 0.11
