@@ -121,7 +121,7 @@ class Law:
 
     def broken(self, case: Case) -> Broken | None:
         """Return how a case breaks the law, or None."""
-        raise NotImplementedError
+        raise TypeError("a law defines broken")
 
     @classmethod
     def summary(cls) -> str:

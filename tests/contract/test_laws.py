@@ -16,7 +16,7 @@ from tests.laws.faulty import FAULTS, SLATE, variant
 from tests.laws.test_claims import claiming
 from tests.laws.test_counts_only import Late
 from tests.laws.test_weight_units import UNITLESS
-from tests.laws.trying import caught
+from tests.laws.trying import assert_caught
 
 NAMES = laws.names()
 RULE_LAWS = [n for n in NAMES if laws.find(n).about == "rule"]
@@ -57,7 +57,7 @@ def test_a_law_is_one_sentence_in_words(name: str) -> None:
 @pytest.mark.parametrize("name", [n for n in NAMES if n not in CELLS])
 def test_every_law_fails_on_a_part_built_to_break_it(name: str) -> None:
     SLATE.clear()
-    caught(CONTROLS[name], name)
+    assert_caught(CONTROLS[name], name)
 
 
 @pytest.mark.parametrize("name", sorted(CELLS))
@@ -75,7 +75,7 @@ def test_there_are_at_least_twenty_design_faults_and_a_law_for_each() -> None:
 @pytest.mark.parametrize("fault", FAULTS)
 def test_every_design_fault_is_caught_by_its_law_within_six_spikes(fault: str) -> None:
     SLATE.clear()
-    caught(*FAULTS[fault])
+    assert_caught(*FAULTS[fault])
 
 
 @pytest.mark.parametrize("name", rules.names())

@@ -10,7 +10,7 @@ from plastic import rules
 from plastic.laws import Case
 from plastic.laws.amplitudes import Amplitudes
 from tests.laws.faulty import FAULTS, Sound, variant
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 NAMES = ("pair_timing", "principal_component", "synaptic_scaling")
 
@@ -22,7 +22,7 @@ def test_rules_whose_amplitudes_set_the_size_keep_it(rule: type) -> None:
 
 @pytest.mark.parametrize("fault", ["RoundedChange", "SinglePrecision", "NoAmplitude"])
 def test_lost_digits_and_squares_are_caught(fault: str) -> None:
-    assert caught(FAULTS[fault][0], "amplitudes").spikes == 2
+    assert assert_caught(FAULTS[fault][0], "amplitudes").spikes == 2
 
 
 def test_the_square_is_told() -> None:

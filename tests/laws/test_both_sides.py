@@ -8,7 +8,7 @@ from plastic import rules
 from plastic.checking.check import check_law
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("rule", [Sound, *map(rules.find, ("pair_timing", "triplet_timing"))])
@@ -17,7 +17,7 @@ def test_rules_of_pairs_keep_it(rule: type) -> None:
 
 
 def test_a_rule_that_reads_its_own_jump_is_caught_by_one_spike() -> None:
-    assert caught(FAULTS["OwnJump"][0], "both_sides").spikes == 1
+    assert assert_caught(FAULTS["OwnJump"][0], "both_sides").spikes == 1
 
 
 def test_what_one_spike_alone_did_is_told() -> None:

@@ -10,7 +10,7 @@ from plastic import rules
 from plastic.engine.learning import Learner
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 START = {"sixteenths": 16}
 
@@ -22,7 +22,7 @@ def test_bounded_rules_keep_it_from_any_start(rule: type) -> None:
 
 @pytest.mark.parametrize("fault", ["MissingBound", "StartBeyondBound"])
 def test_a_bound_that_is_missing_or_passed_is_caught(fault: str) -> None:
-    caught(FAULTS[fault][0], "bounds")
+    assert_caught(FAULTS[fault][0], "bounds")
 
 
 @pytest.mark.parametrize(

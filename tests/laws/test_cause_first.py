@@ -9,7 +9,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, SLATE, Sound
-from tests.laws.trying import assert_kept, caught, holds, told
+from tests.laws.trying import assert_caught, assert_kept, holds, told
 
 PEEKING = FAULTS["FuturePeeking"][0]
 
@@ -20,7 +20,7 @@ def test_rules_without_memory_keep_it(rule: type) -> None:
 
 
 def test_a_rule_that_knows_later_spikes_is_caught() -> None:
-    caught(PEEKING, "cause_first")
+    assert_caught(PEEKING, "cause_first")
 
 
 def test_what_is_there_before_is_told_with_and_without_what_comes() -> None:

@@ -8,7 +8,7 @@ from plastic import rules
 from plastic.checking.check import check_law
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, SLATE, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 ORDER = FAULTS["OrderOfHooks"][0]
 
@@ -19,7 +19,7 @@ def test_rules_that_read_what_was_before_keep_it(rule: type) -> None:
 
 
 def test_a_hook_that_knows_of_the_other_is_caught() -> None:
-    caught(ORDER, "coincidence")
+    assert_caught(ORDER, "coincidence")
 
 
 def test_one_by_one_and_together_are_told() -> None:

@@ -11,7 +11,7 @@ import xarray as xr
 from plastic import rules
 from plastic.laws import Case, compiled
 from tests.laws.faulty import FAULTS
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 def test_a_compiled_rule_keeps_it() -> None:
@@ -20,7 +20,7 @@ def test_a_compiled_rule_keeps_it() -> None:
 
 def test_what_cannot_be_compiled_is_caught_with_the_reason() -> None:
     rule = FAULTS["NotPlainPython"][0]
-    caught(rule, "compiled")
+    assert_caught(rule, "compiled")
     says = told("compiled", Case(rule())).says
     assert says.startswith("it cannot be compiled: NotPlainPython.at_post: it uses the global name")
 

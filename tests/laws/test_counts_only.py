@@ -10,7 +10,7 @@ from plastic.laws.counts_only import CountsOnly
 from plastic.parameters import parameter
 from plastic.rules._interface import Changes, Rule, weight
 from tests.laws.faulty import Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 class Late(Rule):
@@ -35,7 +35,7 @@ def test_rules_of_rates_keep_it(name: str) -> None:
 
 
 def test_a_rule_for_which_order_matters_is_caught() -> None:
-    caught(Late, "counts_only")
+    assert_caught(Late, "counts_only")
 
 
 def test_the_spikes_of_the_window_are_told() -> None:

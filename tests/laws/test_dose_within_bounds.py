@@ -8,7 +8,7 @@ from plastic import rules
 from plastic.laws import Case
 from plastic.laws.dose_within_bounds import DoseWithinBounds
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("name", ["pair_timing", "power_law_timing"])
@@ -17,7 +17,7 @@ def test_measured_rules_keep_it(name: str) -> None:
 
 
 def test_a_rule_whose_dose_ends_at_its_bound_is_caught() -> None:
-    caught(FAULTS["TooStrong"][0], "dose_within_bounds")
+    assert_caught(FAULTS["TooStrong"][0], "dose_within_bounds")
 
 
 def test_the_bound_and_the_pairings_are_told() -> None:

@@ -12,7 +12,7 @@ from plastic.laws import Case, Law
 from plastic.laws.finite_numbers import FiniteNumbers
 from plastic.rules._interface import weight
 from tests.laws.faulty import FAULTS, Sound, variant
-from tests.laws.trying import assert_kept, caught
+from tests.laws.trying import assert_caught, assert_kept
 
 
 def said(law: Law, case: Case) -> str:
@@ -28,7 +28,7 @@ def test_rules_that_survive_any_gap_keep_it(rule: type) -> None:
 
 @pytest.mark.parametrize("fault", ["LongGap", "Division", "UnknownChange"])
 def test_overflow_division_and_an_unknown_variable_are_caught(fault: str) -> None:
-    assert caught(FAULTS[fault][0], "finite_numbers").spikes <= 2
+    assert assert_caught(FAULTS[fault][0], "finite_numbers").spikes <= 2
 
 
 def test_what_a_hook_raised_and_on_what_is_told() -> None:

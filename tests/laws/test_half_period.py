@@ -11,7 +11,7 @@ from plastic.checking.check import check_law
 from plastic.laws import Case
 from plastic.laws.half_period import HalfPeriod
 from tests.laws.faulty import FAULTS, Sound, variant
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 RESET = FAULTS["NeverReset"][0]
 
@@ -24,7 +24,7 @@ def test_rules_that_forget_how_a_train_began_keep_it(rule: type) -> None:
 
 
 def test_a_memory_of_the_first_spike_is_caught() -> None:
-    caught(RESET, "half_period")
+    assert_caught(RESET, "half_period")
 
 
 def test_both_lags_are_told() -> None:

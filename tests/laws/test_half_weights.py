@@ -10,7 +10,7 @@ from plastic import rules
 from plastic.checking.check import check_law
 from plastic.laws import Case
 from tests.laws.faulty import Sound, variant
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 def test_a_rule_in_proportion_to_the_weight_keeps_it() -> None:
@@ -18,7 +18,7 @@ def test_a_rule_in_proportion_to_the_weight_keeps_it() -> None:
 
 
 def test_a_rule_that_promises_it_and_adds_is_caught() -> None:
-    assert caught(variant("Adding", promises=("half_weights",)), "half_weights").spikes == 2
+    assert assert_caught(variant("Adding", promises=("half_weights",)), "half_weights").spikes == 2
 
 
 def test_whole_and_halves_are_told() -> None:

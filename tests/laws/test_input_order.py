@@ -8,7 +8,7 @@ import pytest
 
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, SLATE, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 TURNS = FAULTS["IndexDependence"][0]
 
@@ -18,7 +18,7 @@ def test_a_rule_that_knows_no_numbers_keeps_it() -> None:
 
 
 def test_a_rule_that_treats_inputs_by_turns_is_caught() -> None:
-    caught(TURNS, "input_order")
+    assert_caught(TURNS, "input_order")
 
 
 def test_both_orders_are_told() -> None:

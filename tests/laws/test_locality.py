@@ -9,7 +9,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, SLATE, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 TALKING = FAULTS["CrossTalk"][0]
 
@@ -21,7 +21,7 @@ def test_an_input_that_hears_itself_and_the_cell_keeps_it(rule: type) -> None:
 
 
 def test_inputs_that_talk_to_each_other_are_caught() -> None:
-    caught(TALKING, "locality")
+    assert_caught(TALKING, "locality")
 
 
 def test_the_input_is_told_beside_a_silent_and_beside_an_active_one() -> None:

@@ -9,7 +9,7 @@ import pytest
 from plastic import routes
 from plastic.laws import Case
 from tests.laws.faulty_routes import Plain, constant, route, turning
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("part", [Plain, *map(routes.find, routes.names())])
@@ -19,7 +19,7 @@ def test_routes_keep_it(part: type) -> None:
 
 @pytest.mark.parametrize("multiple", [turning, constant])
 def test_a_route_that_turns_or_stays_is_caught(multiple: Any) -> None:
-    caught(route("Wrong", multiple), "monotone_route")
+    assert_caught(route("Wrong", multiple), "monotone_route")
 
 
 def test_the_way_back_is_told() -> None:

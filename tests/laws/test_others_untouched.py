@@ -7,7 +7,7 @@ import pytest
 from plastic import routes
 from plastic.laws import Case
 from tests.laws.faulty_routes import Plain, route
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("part", [Plain, *map(routes.find, routes.names())])
@@ -25,5 +25,5 @@ def test_routes_keep_it(part: type) -> None:
 )
 def test_a_route_that_says_otherwise_is_caught(target: str, says: str) -> None:
     part = route("Wrong", target=target, touches_others=target == "quantum")
-    caught(part, "others_untouched")
+    assert_caught(part, "others_untouched")
     assert told("others_untouched", Case(part())).says.startswith(says)

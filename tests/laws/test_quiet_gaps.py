@@ -7,7 +7,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 EULER = FAULTS["EulerDecay"][0]
 
@@ -18,7 +18,7 @@ def test_exact_decay_keeps_it(rule: type) -> None:
 
 
 def test_a_decay_in_steps_is_caught() -> None:
-    assert caught(EULER, "quiet_gaps").spikes <= 2
+    assert assert_caught(EULER, "quiet_gaps").spikes <= 2
 
 
 def test_the_two_roads_are_told() -> None:

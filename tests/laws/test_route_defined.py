@@ -9,7 +9,7 @@ import pytest
 from plastic import routes
 from plastic.laws import Case
 from tests.laws.faulty_routes import Plain, dividing, route, unlimited
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("part", [Plain, *map(routes.find, routes.names())])
@@ -19,7 +19,7 @@ def test_routes_keep_it(part: type) -> None:
 
 @pytest.mark.parametrize("multiple", [unlimited, dividing])
 def test_a_route_without_a_limit_or_without_a_value_is_caught(multiple: Any) -> None:
-    caught(route("Wrong", multiple), "route_defined")
+    assert_caught(route("Wrong", multiple), "route_defined")
 
 
 def test_the_limit_is_told() -> None:

@@ -7,7 +7,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, SLATE, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize("rule", [Sound, rules.find("covariance")])
@@ -17,7 +17,7 @@ def test_rules_that_only_compute_keep_it(rule: type) -> None:
 
 @pytest.mark.parametrize("fault", ["GlobalState", "Dice", "ChangedInPlace"])
 def test_memory_chance_and_a_change_in_place_are_caught(fault: str) -> None:
-    assert caught(FAULTS[fault][0], "same_bits").spikes <= 2
+    assert assert_caught(FAULTS[fault][0], "same_bits").spikes <= 2
 
 
 def test_a_parameter_that_a_run_changed_is_told() -> None:

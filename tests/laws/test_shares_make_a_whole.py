@@ -7,7 +7,7 @@ import pytest
 from plastic import routes
 from plastic.laws import Case
 from tests.laws.faulty_routes import Plain, linear, route
-from tests.laws.trying import assert_kept, caught, holds, told
+from tests.laws.trying import assert_caught, assert_kept, holds, told
 
 LINEAR = route("Linear", linear)
 
@@ -19,7 +19,7 @@ def test_routes_keep_it(part: type) -> None:
 
 def test_a_share_that_is_no_exponent_is_caught_and_told() -> None:
     """By hand: half of the way to 2, twice, is 1.5 squared."""
-    caught(LINEAR, "shares_make_a_whole")
+    assert_caught(LINEAR, "shares_make_a_whole")
     case = Case(LINEAR(), numbers={"thousandths": 2000, "permille": 500})
     (row,) = told("shares_make_a_whole", case).rows
     assert (row.one, row.other) == (2.0, 2.25)

@@ -7,7 +7,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 THROUGH = FAULTS["ClippedSign"][0]
 
@@ -19,7 +19,7 @@ def test_weights_with_a_bound_at_zero_keep_it(rule: type) -> None:
 
 
 def test_a_weight_that_goes_through_zero_is_caught() -> None:
-    assert caught(THROUGH, "sign").spikes == 2
+    assert assert_caught(THROUGH, "sign").spikes == 2
 
 
 def test_start_and_end_are_told() -> None:

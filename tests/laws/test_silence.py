@@ -8,7 +8,7 @@ from plastic import rules
 from plastic.checking.check import check_law
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 def test_a_rule_at_rest_keeps_it() -> None:
@@ -16,7 +16,7 @@ def test_a_rule_at_rest_keeps_it() -> None:
 
 
 def test_a_drift_is_caught_without_a_spike() -> None:
-    assert caught(FAULTS["DriftInSilence"][0], "silence").instants == []
+    assert assert_caught(FAULTS["DriftInSilence"][0], "silence").instants == []
 
 
 def test_the_drift_is_told_in_numbers() -> None:

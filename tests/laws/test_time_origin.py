@@ -9,7 +9,7 @@ import pytest
 from plastic import rules
 from plastic.laws import Case
 from tests.laws.faulty import FAULTS, Sound
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 CLOCKED = FAULTS["TimeOfDay"][0]
 
@@ -20,7 +20,7 @@ def test_rules_that_know_only_intervals_keep_it(rule: type) -> None:
 
 
 def test_a_rule_that_reads_the_clock_is_caught() -> None:
-    assert caught(CLOCKED, "time_origin").spikes == 2
+    assert assert_caught(CLOCKED, "time_origin").spikes == 2
 
 
 def test_both_hours_are_told() -> None:

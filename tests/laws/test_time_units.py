@@ -10,7 +10,7 @@ from plastic import rules
 from plastic.laws import Case
 from plastic.laws.time_units import stretched
 from tests.laws.faulty import FAULTS, Sound, variant
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 
 @pytest.mark.parametrize(
@@ -26,12 +26,12 @@ def test_a_power_of_a_rate_is_declared_and_needed(name: str) -> None:
     assert_kept(rule, "time_units")
     with pytest.MonkeyPatch.context() as patched:
         patched.setattr(rule, "rate_powers", {})
-        caught(rule, "time_units")
+        assert_caught(rule, "time_units")
 
 
 @pytest.mark.parametrize("fault", ["HardCodedMilliseconds", "HardCodedTrace", "UnitSlip"])
 def test_a_hidden_millisecond_is_caught(fault: str) -> None:
-    assert caught(FAULTS[fault][0], "time_units").spikes == 2
+    assert assert_caught(FAULTS[fault][0], "time_units").spikes == 2
 
 
 def test_both_worlds_are_told() -> None:

@@ -10,7 +10,7 @@ from plastic.laws.weight_units import WeightUnits
 from plastic.parameters import parameter
 from plastic.rules._interface import weight
 from tests.laws.faulty import Sound, variant
-from tests.laws.trying import assert_kept, caught, told
+from tests.laws.trying import assert_caught, assert_kept, told
 
 #: a weight in pA whose change forgets the unit
 UNITLESS = variant(
@@ -25,7 +25,7 @@ def test_a_rule_in_picoampere_keeps_it() -> None:
 
 
 def test_a_change_that_forgets_the_unit_is_caught() -> None:
-    assert caught(UNITLESS, "weight_units").spikes == 2
+    assert assert_caught(UNITLESS, "weight_units").spikes == 2
 
 
 def test_both_units_are_told() -> None:

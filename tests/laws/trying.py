@@ -12,7 +12,7 @@ from plastic.laws import Broken, Case
 FEW = 6
 
 
-def caught(part: type[Any], law: str, *, examples: int = 100) -> Case:
+def assert_caught(part: type[Any], law: str, *, examples: int = 100) -> Case:
     """Return the smallest case of a part that must break a law."""
     verdict = check_law(part, law, examples=examples)
     assert verdict.status == "fails", (part.__name__, law, verdict.reason)
