@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from plastic.report.counts import simulated
 from plastic.report.grid import Grid
 from plastic.study.half_step import (
     FINE,
@@ -30,8 +31,8 @@ def step_grid(check: StepCheck) -> Grid:
         for arm in check.arms
     ]  # fmt: skip
     title = (
-        f"Half the time step: {check.dt / 2:g} instead of {check.dt:g} ms, in {check.cells} "
-        "simulated cells"
+        f"Half the time step: {check.dt / 2:g} instead of {check.dt:g} ms, "
+        f"in {simulated(check.cells)}"
     )
     notes = [
         "change in the cell in the middle (in the cell that moves most), the largest over inputs "
