@@ -31,6 +31,8 @@ from plastic.study import store
 
 when, name, *words = sys.argv[1:]
 real, seen = os.replace, []
+# a job in the background of a shell starts deaf to it
+signal.signal(signal.SIGINT, signal.default_int_handler)
 
 def replace(part, target):
     if str(target).endswith(".npz"):
