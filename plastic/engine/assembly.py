@@ -180,35 +180,50 @@ def wire(
     immediate : bool
         Ignore the delays and time constants of expression.
     """
-    dt, tree = scene.dt, scene.tree
-    kinds = dict.fromkeys((k.node, k.receptor) for k in scene.contacts)
+    dt, contacts = scene.dt, scene.contacts
+    kinds = dict.fromkeys((k.node, k.receptor) for k in contacts)
     groups = sorted(kinds, key=lambda kind: kind[0])
-    nodes = [node for node, _ in groups]
-    rise, decay = np.array([(r.rise, r.decay) for _, r in groups]).reshape(-1, 2).T
-    fastest = np.where(rise > 0, rise, 1.0)
     learners = scene.ordered_learners()
-    places = [scene.contacts[scene.primary(name)].node for name in learners]
+    places = [contacts[scene.primary(name)].node for name in learners]
     sites = [0, *dict.fromkeys(node for node in places if node != 0)]
     site_of = [sites.index(node) for node in places]
-    spread = scene.back_propagation
-    distance = tree.node_distance[sites]
-    contacts = scene.contacts
-    beyond = np.array(
-        [
-            [int(k.node in tree.beyond(s) and not k.added) for k in contacts]
-            for s in range(len(tree.stretch_parent))
-        ],
-        dtype=np.int64,
-    ).reshape(len(tree.stretch_parent), len(contacts))
-    excites = np.array([int(k.input not in scene.inhibitory) for k in contacts])
-    plan = table(
+    distance = scene.tree.node_distance[sites]
+    delay = np.rint(np.asarray(scene.back_propagation.delay(distance)) / dt)
+    wired = _contacts(scene, groups, learners)
+    beyond = _beyond(scene)
+    return Wiring(
+        plan=_plan(scene, end, numbers.window, _tick(route, dt, immediate)),
+        stretches=_stretches(scene, beyond, wired),
+        beyond=beyond,
+        eased=_eased(scene, learners),
+        groups=_groups(groups, scene.rest, dt),
+        slots=_slots([node for node, _ in groups]),
+        contacts=wired,
+        sites=table(layout.SITE, delay=delay, distance=distance),
+        learner_site=_ints(site_of),
+        site_first=_ints(np.searchsorted(site_of, np.arange(len(sites) + 1))),
+        events=events,
+        reading_step=_ints(np.rint(np.asarray(readings) / dt)),
+        channels=_channels(route, immediate),
+        taus_pre=numbers.taus_pre,
+        taus_post=numbers.taus_post,
+        starts=numbers.starts,
+        cell_starts=numbers.cell_starts,
+        low=numbers.low,
+    )
+
+
+def _plan(scene: Scene, end: float, window: float, tick: int) -> Records:
+    """Return the single numbers of an arm; end and window in ms, tick in steps."""
+    dt, spread = scene.dt, scene.back_propagation
+    return table(
         layout.PLAN,
         seed=scene.seed,
         n_steps=round(end / dt),
-        n_nodes=tree.n_nodes,
+        n_nodes=scene.tree.n_nodes,
         refractory=round(scene.refractory / dt),
-        tick=_tick(route, dt, immediate),
-        window=round(numbers.window / dt),
+        tick=tick,
+        window=round(window / dt),
         deterministic=int(scene.deterministic),
         clocked=int(scene.clocked),
         dt=dt,
@@ -220,59 +235,72 @@ def wire(
         bap_loss=spread.train_loss,
         bap_recovery=max(spread.recovery, 1e-9),
         bap_floor=spread.floor,
+    ).reshape(1)
+
+
+def _beyond(scene: Scene) -> Ints:
+    """Return which contacts lie at or beyond each stretch, (stretch, contact)."""
+    stretches, contacts = range(len(scene.tree.stretch_parent)), scene.contacts
+    rows = [
+        [int(k.node in scene.tree.beyond(s) and not k.added) for k in contacts] for s in stretches
+    ]
+    return np.array(rows, dtype=np.int64).reshape(len(stretches), len(contacts))
+
+
+def _stretches(scene: Scene, beyond: Ints, contacts: Records) -> Records:
+    """Return the stretches; one widens that has a learning excitatory contact beyond it."""
+    tree = scene.tree
+    return table(
+        layout.STRETCH,
+        parent=tree.stretch_parent,
+        child=tree.stretch_child,
+        widens=(beyond * contacts["excites"] * (contacts["learner"] >= 0)).any(axis=1),
+        length=tree.stretch_length,
+        diameter=tree.stretch_diameter,
     )
-    learning = np.array([int(k.input in learners) for k in contacts], dtype=int)
-    return Wiring(
-        plan=plan.reshape(1),
-        stretches=table(
-            layout.STRETCH,
-            parent=tree.stretch_parent,
-            child=tree.stretch_child,
-            widens=(beyond * excites * learning).any(axis=1),
-            length=tree.stretch_length,
-            diameter=tree.stretch_diameter,
-        ),
-        beyond=beyond,
-        eased=_eased(scene, learners),
-        groups=table(
-            layout.GROUP,
-            reversal=[r.reversal - scene.rest for _, r in groups],
-            keep_decay=np.exp(-dt / decay),
-            keep_rise=np.where(rise > 0, np.exp(-dt / fastest), 0.0),
-            mean_decay=-np.expm1(-dt / decay) * decay / dt,
-            mean_rise=np.where(rise > 0, -np.expm1(-dt / fastest) * fastest / dt, 0.0),
-            norm=[float(norm(*times)) for times in zip(rise, decay, strict=True)],
-        ),
-        slots=table(
-            layout.SLOT,
-            node=np.unique(nodes),
-            first=np.searchsorted(nodes, np.unique(nodes)),
-            last=np.searchsorted(nodes, np.unique(nodes), side="right"),
-        ),
-        contacts=table(
-            layout.CONTACT,
-            group=[groups.index((k.node, k.receptor)) for k in contacts],
-            learner=[learners.index(k.input) if k.input in learners else -1 for k in contacts],
-            added=[int(k.added) for k in contacts],
-            excites=excites,
-            cv=[k.quantal_cv for k in contacts],
-            recovery=[k.recovery for k in contacts],
-            facilitation=[k.facilitation for k in contacts],
-            neck=[k.neck for k in contacts],
-        ),
-        sites=table(
-            layout.SITE, delay=np.rint(np.asarray(spread.delay(distance)) / dt), distance=distance
-        ),
-        learner_site=_ints(site_of),
-        site_first=_ints(np.searchsorted(site_of, np.arange(len(sites) + 1))),
-        events=events,
-        reading_step=_ints(np.rint(np.asarray(readings) / dt)),
-        channels=_channels(route, immediate),
-        taus_pre=numbers.taus_pre,
-        taus_post=numbers.taus_post,
-        starts=numbers.starts,
-        cell_starts=numbers.cell_starts,
-        low=numbers.low,
+
+
+def _groups(groups: Sequence[tuple[int, Receptor]], rest: float, dt: float) -> Records:
+    """Return the kinetics of every group of receptors; a rise of 0 is a single exponential."""
+    rise, decay = np.array([(r.rise, r.decay) for _, r in groups]).reshape(-1, 2).T
+    fastest = np.where(rise > 0, rise, 1.0)
+    return table(
+        layout.GROUP,
+        reversal=[r.reversal - rest for _, r in groups],
+        keep_decay=np.exp(-dt / decay),
+        keep_rise=np.where(rise > 0, np.exp(-dt / fastest), 0.0),
+        mean_decay=-np.expm1(-dt / decay) * decay / dt,
+        mean_rise=np.where(rise > 0, -np.expm1(-dt / fastest) * fastest / dt, 0.0),
+        norm=[float(norm(*times)) for times in zip(rise, decay, strict=True)],
+    )
+
+
+def _slots(nodes: Sequence[int]) -> Records:
+    """Return the nodes that have receptors, each with the range of its (sorted) groups."""
+    each = np.unique(nodes)
+    return table(
+        layout.SLOT,
+        node=each,
+        first=np.searchsorted(nodes, each),
+        last=np.searchsorted(nodes, each, side="right"),
+    )
+
+
+def _contacts(
+    scene: Scene, groups: Sequence[tuple[int, Receptor]], learners: Sequence[str]
+) -> Records:
+    """Return the contacts, with the group each opens and the learner it belongs to."""
+    contacts = scene.contacts
+    return table(
+        layout.CONTACT,
+        group=[groups.index((k.node, k.receptor)) for k in contacts],
+        learner=[learners.index(k.input) if k.input in learners else -1 for k in contacts],
+        added=[int(k.added) for k in contacts],
+        excites=[int(k.input not in scene.inhibitory) for k in contacts],
+        cv=[k.quantal_cv for k in contacts],
+        recovery=[k.recovery for k in contacts],
+        facilitation=[k.facilitation for k in contacts],
+        neck=[k.neck for k in contacts],
     )
 
 
